@@ -29,6 +29,8 @@ export interface RecogniseOptions {
   readonly rename?: Readonly<Record<string, string>> | undefined;
   /** Read only these: gathered or component names of standard quantities, or names in the file as they stand. */
   readonly quantities?: readonly string[] | undefined;
+  /** kg/m3, for the conversion of dynamic quantities where the file holds no Density. */
+  readonly density?: number | undefined;
 }
 
 export interface Recognised {
@@ -316,7 +318,8 @@ function convertDynamic(
         file,
         place: 'ReynoldsStress',
         cause: "the standard's ReynoldsStress is -rho u'u' and Density is missing",
-        remedy: 'add a Density array, or map the arrays to VelocityCovariance by a rename if they are per unit mass',
+        remedy:
+          'add a Density array or constant, or map the arrays to VelocityCovariance by a rename if they are per unit mass',
       });
     }
   }
@@ -357,6 +360,9 @@ export function recogniseFields(arrays: readonly DataArray[], options: Recognise
   const needed = convertedByDensity.some(({ from, to }) => fields.has(from) && !fields.has(to));
   if (density === undefined && densitySource !== undefined && needed) {
     density = readSource(densitySource, tuples, file, remarks).values;
+  }
+  if (density === undefined && options.density !== undefined && needed) {
+    density = new Float64Array(tuples).fill(options.density);
   }
   convertDynamic(fields, density, file, remarks);
   for (const array of arrays) {

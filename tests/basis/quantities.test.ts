@@ -62,7 +62,9 @@ describe('recogniseFields', () => {
     });
     expect(fields.has('ReynoldsStress')).toBe(false);
     expect(remarks.join()).toContain('-ReynoldsStress / Density');
-    expect(failure(() => recogniseFields(stress, { file }))).toContain('no Density');
+    expect(failure(() => recogniseFields(stress, { file }))).toContain('Density is missing');
+    const constant = recogniseFields(stress, { file, density: 2.4 }).fields.get('VelocityCovariance')!;
+    expect(constant.values[5]).toBeCloseTo(3, 14);
     const only = recogniseFields([...stress, array('Density', [1.2])], { file, quantities: ['VelocityCovariance'] });
     expect([...only.fields.keys()]).toEqual(['VelocityCovariance']);
   });
