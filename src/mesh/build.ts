@@ -13,9 +13,9 @@ import {
 import type { CellMesh } from './cell-mesh.js';
 import { cellShape, polyhedronType, wedgeShape } from './cell-types.js';
 import { createFaceTable, findFace, putFace, renumberFaces, setKeyOfFace, takeFace } from './face-table.js';
-import { volumeError } from './geometry.js';
 import { findPatches } from './patches.js';
 import { orientPolyhedron } from './polyhedron-orientation.js';
+import { volumeError } from './quality.js';
 import { weldPoints } from './weld.js';
 
 function requireCells(dataset: Dataset): CellTopology {

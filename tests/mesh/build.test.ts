@@ -3,7 +3,8 @@ import type { Dataset } from '../../src/basis/dataset.js';
 import { InputError } from '../../src/basis/errors.js';
 import { buildMesh } from '../../src/mesh/build.js';
 import type { CellMesh, MeshGeometry } from '../../src/mesh/cell-mesh.js';
-import { measureMesh, requirePositiveVolumes } from '../../src/mesh/geometry.js';
+import { measureMesh } from '../../src/mesh/geometry.js';
+import { requirePositiveVolumes } from '../../src/mesh/quality.js';
 import {
   bendChannel,
   brickPolyhedra,
