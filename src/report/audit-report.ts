@@ -118,9 +118,9 @@ export function proofSections(data: AuditReportData): Section[] {
         profile.caption,
         { label: profile.coordinate, unit: profile.unit },
         { label: 'k and covariances', unit: profile.quantityUnit },
-        profile.curves.flatMap((c) => [
-          { name: `${c.name} wanted`, x: c.x, y: c.wanted, faint: true },
-          { name: `${c.name} recovered`, x: c.x, y: c.recovered },
+        profile.curves.flatMap((c, tone): Curve[] => [
+          { name: `${c.name} wanted`, x: c.x, y: c.wanted, kind: 'points', tone },
+          { name: `${c.name} recovered`, x: c.x, y: c.recovered, tone },
         ]),
       ),
     );

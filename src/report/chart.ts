@@ -2,7 +2,7 @@ import { LineChart, ScatterChart } from 'echarts/charts';
 import { GridComponent, MarkLineComponent } from 'echarts/components';
 import { init, use } from 'echarts/core';
 import { SVGRenderer } from 'echarts/renderers';
-import { escapeHtml } from './escape.js';
+import { escapeHtml, prettyUnits } from './escape.js';
 import { type Axis, type ChartBlock, figure, type Series } from './page.js';
 import { type Role, replaceStandIns, standIn } from './palette.js';
 import { linearTicks, logTicks } from './ticks.js';
@@ -29,9 +29,11 @@ export interface ChartData {
 const seriesRoles: readonly Role[] = ['one', 'two', 'three', 'four', 'soft'];
 const dashes: readonly (readonly number[])[] = [[], [9, 4], [2, 3], [10, 3, 2, 3], [5, 2]];
 const width = 760;
-const height = 340;
+const height = 334;
 const plot = [72, 18, 736, 284] as const;
 const mostPoints = 1200;
+
+const toneOf = (series: Series, i: number): number => series.tone ?? i;
 
 /** At most `limit` points of a series: the smallest and the largest of each stretch are kept. */
 export function thin(series: Series, limit = mostPoints): { x: number[]; y: number[] } {
@@ -88,7 +90,7 @@ function padded(range: [number, number], axis: Axis): [number, number] {
 }
 
 export function axisTitle(axis: Axis): string {
-  return axis.unit === undefined || axis.unit === '' ? axis.label : `${axis.label}, ${axis.unit}`;
+  return axis.unit === undefined || axis.unit === '' ? axis.label : `${axis.label}, ${prettyUnits(axis.unit)}`;
 }
 
 const shown = (v: number, axis: Axis): boolean => Number.isFinite(v) && (axis.scale === 'linear' || v > 0);
@@ -131,10 +133,11 @@ export function drawChart(block: ChartBlock): { svg: string; data: ChartData } {
       yAxis: axisOption(block.y, yRange),
       series: block.series.map((series, i) => {
         const points = thinned[i] as { x: number[]; y: number[] };
-        const colour = standIn(seriesRoles[i % seriesRoles.length] as Role);
+        const tone = toneOf(series, i);
+        const colour = standIn(seriesRoles[tone % seriesRoles.length] as Role);
         const values = points.x.map((x, j) => [place(x, block.x), place(points.y[j] as number, block.y)]);
         if (series.kind === 'points') {
-          return { type: 'scatter', silent: true, data: values, symbolSize: 6, itemStyle: { color: colour } };
+          return { type: 'scatter', silent: true, data: values, symbolSize: 5.5, itemStyle: { color: colour } };
         }
         return {
           type: 'line',
@@ -149,7 +152,7 @@ export function drawChart(block: ChartBlock): { svg: string; data: ChartData } {
           lineStyle: {
             color: colour,
             width: series.faint === true ? 1.2 : 2,
-            type: series.faint === true ? [2, 3] : (dashes[i % dashes.length]?.slice() ?? 'solid'),
+            type: series.faint === true ? [2, 3] : (dashes[tone % dashes.length]?.slice() ?? 'solid'),
           },
         };
       }),
@@ -259,8 +262,9 @@ function markLines(block: ChartBlock, range: Ranges): string {
 export function legend(block: ChartBlock): string {
   if (block.series.length < 2) return '';
   const items = block.series.map((series, i) => {
-    const colour = `var(--${seriesRoles[i % seriesRoles.length]})`;
-    const dash = series.faint === true ? '2 3' : (dashes[i % dashes.length] ?? []).join(' ');
+    const tone = toneOf(series, i);
+    const colour = `var(--${seriesRoles[tone % seriesRoles.length]})`;
+    const dash = series.faint === true ? '2 3' : (dashes[tone % dashes.length] ?? []).join(' ');
     const sample =
       series.kind === 'points'
         ? `<circle cx="17" cy="6" r="3.5" fill="${colour}"/>`

@@ -25,12 +25,14 @@ export function histogramChart(
   const first = sets[0]?.histogram;
   const low = Math.min(...sets.map((set) => set.histogram.edges[0] as number));
   const high = Math.max(...sets.map((set) => set.histogram.edges[set.histogram.edges.length - 1] as number));
+  let tallest = 0;
+  for (const { histogram } of sets) for (const s of Array.from(histogram.shares)) if (s > tallest) tallest = s;
   return {
     type: 'chart',
     title,
     caption,
     x: { ...x, scale: first?.scale ?? 'linear', range: [low, high] },
-    y: { label: `share of the ${weight}`, unit: '%', scale: 'linear' },
+    y: { label: `share of the ${weight}`, unit: '%', scale: 'linear', range: [0, 108 * tallest || 1] },
     series: sets.map(({ name, histogram }) => {
       const shares = Array.from(histogram.shares, (s) => 100 * s);
       return { name, kind: 'steps', x: Array.from(histogram.edges), y: [...shares, shares[shares.length - 1] ?? 0] };
@@ -44,6 +46,9 @@ export interface Curve {
   readonly x: ArrayLike<number>;
   readonly y: ArrayLike<number>;
   readonly faint?: boolean;
+  readonly tone?: number;
+  /** Default `line`. */
+  readonly kind?: 'line' | 'points';
 }
 
 /** The -5/3 line through the geometric middle of a curve's upper decade below `upTo`. */
@@ -91,7 +96,7 @@ export function spectrumChart(options: {
     caption: options.caption,
     x: { ...options.x, scale: 'log' },
     y: { ...options.y, scale: 'log', ...range },
-    series: options.curves.map((curve) => ({ ...curve, kind: 'line' as const })),
+    series: options.curves.map((curve) => ({ kind: 'line' as const, ...curve })),
     marks: options.cutoffs.map((cutoff) => ({ axis: 'x' as const, ...cutoff })),
   };
 }
@@ -105,7 +110,7 @@ export function profileChart(
   curves: readonly Curve[],
   marks: readonly Mark[] = [],
 ): ChartBlock {
-  const series: Series[] = curves.map((curve) => ({ ...curve, kind: 'line' }));
+  const series: Series[] = curves.map((curve) => ({ kind: 'line', ...curve }));
   return { type: 'chart', title, caption, x: { scale: 'linear', ...x }, y: { scale: 'linear', ...y }, series, marks };
 }
 

@@ -64,6 +64,8 @@ export interface Series {
   readonly kind: 'line' | 'steps' | 'points';
   /** Thin and dotted: a bound or a model beside the data. */
   readonly faint?: boolean;
+  /** Series of equal tone share colour and dash; default: one tone each. */
+  readonly tone?: number;
 }
 
 export interface Mark {
@@ -115,7 +117,7 @@ export function figure(x: number, digits = 4): string {
   if (!Number.isFinite(x)) return x > 0 ? 'infinite' : '-infinite';
   if (x === 0) return '0';
   const size = Math.abs(x);
-  if (Number.isInteger(x) && size < 1e15) return size >= 1e5 ? grouped(x) : String(x);
+  if (Number.isInteger(x) && size < 1e15) return size >= 1e4 ? grouped(x) : String(x);
   if (size < 1e-3 || size >= 1e6) return Number(x.toPrecision(digits)).toExponential().replace('e+', 'e');
   return String(Number(x.toPrecision(digits)));
 }

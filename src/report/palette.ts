@@ -51,7 +51,7 @@ export const rampSteps = 255;
 export function sequentialRamp(): readonly Rgb[] {
   return Array.from({ length: rampSteps }, (_, i) => {
     const t = i / (rampSteps - 1);
-    return fromOklch(0.24 + 0.71 * t, 0.035 + 0.085 * Math.sin(Math.PI * t) ** 0.8, 262 - 190 * t ** 1.15);
+    return fromOklch(0.23 + 0.73 * t, 0.03 + 0.075 * Math.sin(Math.PI * t) ** 0.8, 252 - 170 * t ** 1.7);
   });
 }
 
@@ -78,7 +78,7 @@ const light: Readonly<Record<Role, Rgb>> = {
   rule: fromOklch(0.85, 0.012, 100),
   paper: fromOklch(0.985, 0.006, 95),
   one: fromOklch(0.44, 0.09, 222),
-  two: fromOklch(0.55, 0.14, 42),
+  two: fromOklch(0.5, 0.14, 42),
   three: fromOklch(0.42, 0.11, 330),
   four: fromOklch(0.52, 0.1, 130),
   mark: fromOklch(0.4, 0.03, 60),

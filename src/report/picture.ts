@@ -1,6 +1,6 @@
 import { deflateSync } from 'node:zlib';
 import { encode } from 'fast-png';
-import { escapeHtml } from './escape.js';
+import { escapeHtml, prettyUnits } from './escape.js';
 import { figure, type PictureBlock } from './page.js';
 import { css, divergingRamp, type Rgb, rampSteps, sequentialRamp } from './palette.js';
 import { linearTicks, logTicks } from './ticks.js';
@@ -28,7 +28,7 @@ export interface PictureData {
 const drawingWidth = 900;
 const left = 64;
 const right = 770;
-const top = 12;
+const top = 30;
 
 function finiteRange(block: PictureBlock, share: number): [number, number] {
   const values = Float64Array.from(block.values).filter(
@@ -153,12 +153,12 @@ function colourBar(
   bottom: number,
 ): string {
   const x = right + 26;
-  const barTop = top + 22;
+  const barTop = top;
   const barHeight = Math.max(60, bottom - barTop);
   const log = block.scale === 'log';
   const steps = 32;
   const parts: string[] = [
-    `<text class="title" x="${x}" y="${top + 8}">${escapeHtml(block.unit === '' ? block.quantity : `${block.quantity}, ${block.unit}`)}</text>`,
+    `<text class="title" x="${drawingWidth - 4}" y="16" text-anchor="end">${escapeHtml(block.unit === '' ? block.quantity : `${block.quantity}, ${prettyUnits(block.unit)}`)}</text>`,
   ];
   for (let i = 0; i < steps; i++) {
     const colour = css(ramp[Math.round(((i + 0.5) / steps) * (rampSteps - 1))] as Rgb);
@@ -203,7 +203,7 @@ export function drawPicture(block: PictureBlock): { svg: string; data: PictureDa
   const scale = Math.min(1, 620 / plotHeight);
   const pictureRight = left + plotWidth * scale;
   const bottom = top + Math.max(1, plotHeight * scale);
-  const frameHeight = Math.max(bottom, top + 90) + 52;
+  const frameHeight = Math.max(bottom, top + 70) + 52;
   const x = (a: number): number => left + ((a - block.low[0]) / (block.high[0] - block.low[0])) * (pictureRight - left);
   const y = (b: number): number => bottom - ((b - block.low[1]) / (block.high[1] - block.low[1])) * (bottom - top);
   const parts: string[] = [
@@ -257,7 +257,7 @@ export function drawPicture(block: PictureBlock): { svg: string; data: PictureDa
       high: block.high,
       axes: block.axes,
       quantity: block.quantity,
-      unit: block.unit,
+      unit: prettyUnits(block.unit),
       log: block.scale === 'log',
       range: coded,
       codes,

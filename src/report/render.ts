@@ -1,6 +1,6 @@
 import { createHash } from 'node:crypto';
 import { drawChart, legend } from './chart.js';
-import { embedJson, escapeHtml } from './escape.js';
+import { embedJson, escapeHtml, prettyUnits } from './escape.js';
 import {
   type Block,
   type ChartBlock,
@@ -29,6 +29,8 @@ const kinds = {
   'follow-up': 'follow-up of a run',
 } as const;
 
+const capital = (text: string): string => text.charAt(0).toUpperCase() + text.slice(1);
+
 function figureHead(title: string): string {
   return `<div class="head"><h3>${escapeHtml(title)}</h3><button type="button" aria-label="Download ${escapeHtml(title)} as CSV">CSV</button></div>`;
 }
@@ -53,16 +55,18 @@ function cellText(cell: TableCell): string {
 function renderTable(block: TableBlock): string {
   const numeric = block.columns.map((_, c) => block.rows.some((row) => typeof row[c] === 'number'));
   const heads = block.columns.map((column, c) => {
-    const unit = column.unit === undefined || column.unit === '' ? '' : ` <small>${escapeHtml(column.unit)}</small>`;
+    const unit =
+      column.unit === undefined || column.unit === '' ? '' : ` <small>${escapeHtml(prettyUnits(column.unit))}</small>`;
     return `<th scope="col"${numeric[c] ? ' class="number"' : ''}>${escapeHtml(column.label)}${unit}</th>`;
   });
   const rows = block.rows.map((row) => {
     const cells = row.map((cell, c) => {
       const value = typeof cell === 'number' && Number.isFinite(cell) ? ` data-value="${cell}"` : '';
-      const attributes = `${numeric[c] ? ' class="number"' : ''}${value}`;
-      return c === 0
-        ? `<th scope="row"${attributes}>${escapeHtml(cellText(cell))}</th>`
-        : `<td${attributes}>${escapeHtml(cellText(cell))}</td>`;
+      const text = cellText(cell);
+      const kind = numeric[c] ? 'number' : text.length > 40 ? 'long' : text.length <= 14 ? 'short' : '';
+      const attributes = `${kind === '' ? '' : ` class="${kind}"`}${value}`;
+      const shown = escapeHtml(typeof cell === 'string' && text.length <= 14 ? prettyUnits(text) : text);
+      return c === 0 ? `<th scope="row"${attributes}>${shown}</th>` : `<td${attributes}>${shown}</td>`;
     });
     return `<tr>${cells.join('')}</tr>`;
   });
@@ -83,8 +87,8 @@ function renderBlock(block: Block, nextNumber: () => number): string {
       return `<dl class="facts">${block.items
         .map(
           (item) =>
-            `<div><dt>${escapeHtml(item.label)}</dt><dd><span class="value">${escapeHtml(item.value)}</span>` +
-            `${item.note === undefined ? '' : `<br><span class="note">${escapeHtml(item.note)}</span>`}</dd></div>`,
+            `<div><dt>${escapeHtml(item.label)}</dt><dd><span class="value">${escapeHtml(prettyUnits(item.value))}</span>` +
+            `${item.note === undefined ? '' : `<br><span class="note">${escapeHtml(prettyUnits(item.note))}</span>`}</dd></div>`,
         )
         .join('')}</dl>`;
     case 'table':
@@ -116,7 +120,7 @@ export function renderReport(page: ReportPage): string {
     page.verdict === undefined
       ? ''
       : `<div class="verdict ${page.verdict.level}"><svg viewBox="0 0 32 32" aria-hidden="true">${verdictShapes[page.verdict.level]}</svg>` +
-        `<p><strong>${verdictNames[page.verdict.level]}.</strong> ${escapeHtml(page.verdict.words)}</p></div>`;
+        `<p><strong>${verdictNames[page.verdict.level]}.</strong> ${escapeHtml(capital(page.verdict.words))}</p></div>`;
   return `<!doctype html>
 <html lang="en">
 <head>

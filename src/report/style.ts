@@ -26,7 +26,7 @@ nav li{counter-increment:n}
 nav a{display:block;padding:.3rem 0;color:var(--soft);text-decoration:none;border-bottom:1px solid transparent}
 nav a::before{content:counter(n) "  ";color:var(--one);font-weight:650;white-space:pre}
 nav a:hover{color:var(--ink);border-bottom-color:var(--one)}
-main{min-width:0}
+main{min-width:0;max-width:62rem}
 section{padding-top:2.2rem;counter-increment:s}
 main{counter-reset:s}
 h2{margin:0 0 1rem;padding-top:.7rem;border-top:3px solid var(--ink);font-size:1.6rem}
@@ -49,8 +49,7 @@ button{font:inherit;font-size:.86rem;color:var(--ink);background:none;border:1px
 button:hover{border-color:var(--one);background:var(--raised)}
 a:focus-visible,button:focus-visible,[tabindex]:focus-visible{outline:3px solid var(--two);outline-offset:2px}
 .plot{overflow-x:auto;position:relative}
-.plot svg{display:block;width:100%;min-width:34rem;height:auto;max-width:62rem;cursor:crosshair}
-.plot.chart svg{max-width:54rem}
+.plot svg{display:block;width:100%;min-width:34rem;height:auto;cursor:crosshair}
 .plot text{font-family:inherit;font-size:13px;fill:var(--ink)}
 .plot .tick{font-size:12px;fill:var(--soft)}
 .plot .title{fill:var(--soft)}
@@ -81,7 +80,9 @@ th,td{padding:.36rem 1.3rem .36rem 0;text-align:left;vertical-align:top;border-b
 thead th{border-bottom:2px solid var(--ink);font-weight:600;vertical-align:bottom}
 thead small{display:block;color:var(--soft);font-weight:400;font-size:.82rem}
 tbody th{font-weight:500}
-.number{text-align:right}
+.number{text-align:right;white-space:nowrap}
+.short{white-space:nowrap}
+.long{min-width:17rem}
 .caution{margin:2rem 0 0;padding:.9rem 0 .9rem 1.1rem;border-left:.45rem solid var(--two);max-width:74ch;font-size:1.05rem}
 footer{border-top:1px solid var(--rule);margin-top:2.5rem;padding-top:.8rem;color:var(--soft);font-size:.9rem;overflow-wrap:anywhere}
 footer p{margin:.15rem 0;max-width:none}
