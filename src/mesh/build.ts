@@ -107,12 +107,12 @@ function reverseAll(buffer: FaceBuffer): void {
   for (let f = 0; f < buffer.count; f++) reverseFace(buffer, f);
 }
 
-/** True when a face runs against the same face as its other cell has it. */
-function runsOpposite(faces: FaceBuffer, f: number, stored: Int32Array): boolean {
+/** True when a face runs against the same face as its other cell has it, at `stored[begin ... end)`. */
+function runsOpposite(faces: FaceBuffer, f: number, stored: Int32Array, begin: number, end: number): boolean {
   const a = faces.points[faces.starts[f]!]!;
-  const b = faces.points[faces.starts[f]! + 1]!;
-  const at = stored.indexOf(a);
-  return stored[at === 0 ? stored.length - 1 : at - 1] === b;
+  let at = begin;
+  while (stored[at] !== a) at++;
+  return stored[at === begin ? end - 1 : at - 1] === faces.points[faces.starts[f]! + 1]!;
 }
 
 /** What to say about cells whose faces disagree with their neighbours': all cells with no positive volume of their own. */
@@ -222,8 +222,8 @@ export function buildMesh(dataset: Dataset): CellMesh {
     for (let f = 0; f < buffer.count; f++) {
       const face = cellFaces[begin + f]!;
       if (owner[face] !== c) {
-        const stored = facePoints.subarray(faceOffsets[face]!, faceOffsets[face + 1]!);
-        if (!runsOpposite(buffer, f, stored)) throw invertedCells(dataset, mesh, pointOf, leftHanded, cell);
+        if (!runsOpposite(buffer, f, facePoints, faceOffsets[face]!, faceOffsets[face + 1]!))
+          throw invertedCells(dataset, mesh, pointOf, leftHanded, cell);
         continue;
       }
       let to = faceOffsets[face]!;
