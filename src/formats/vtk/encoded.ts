@@ -1,0 +1,247 @@
+import { inflateSync } from 'node:zlib';
+import { decompressBlock } from 'lz4js';
+import { InputError } from '../../basis/errors.js';
+import type { FileReader } from '../file-reader.js';
+import { swapBytes } from './numbers.js';
+
+export type Compressor = 'none' | 'zlib' | 'lz4' | 'lzma';
+
+/** How the arrays of one file are encoded. */
+export interface Encoding {
+  readonly headerBytes: 4 | 8;
+  readonly bigEndian: boolean;
+  readonly compressor: Compressor;
+}
+
+/** Where the encoded bytes of one array lie. */
+export interface EncodedPlace {
+  /** First byte (raw) or first base64 character. */
+  readonly begin: number;
+  /** One behind the last byte that may belong to it. */
+  readonly end: number;
+  readonly text: boolean;
+  readonly label: string;
+}
+
+/** The still compressed blocks of an array, or its plain bytes. */
+export interface Payload {
+  readonly bytes: Uint8Array;
+  /** Compressed sizes of the blocks; undefined for plain bytes. */
+  readonly blocks?: readonly { readonly begin: number; readonly size: number; readonly full: number }[];
+  readonly total: number;
+}
+
+const mostBytes = 2 ** 36;
+
+function fault(reader: FileReader, label: string, cause: string): InputError {
+  return new InputError({ file: reader.path, place: label, cause, remedy: 'the file is damaged; write it again' });
+}
+
+/** Source of decoded bytes in order, over raw bytes or base64 text. */
+interface ByteSource {
+  /** Takes the next `count` bytes of the present base64 stream (or of the raw bytes). */
+  readonly take: (count: number) => Uint8Array;
+  /** Begins the next base64 stream on a four-character border. */
+  readonly nextStream: () => void;
+  /** True when the stream that began the place ends after `count` bytes (padding right behind them). */
+  readonly endsAfter: (count: number) => boolean;
+}
+
+function rawSource(reader: FileReader, place: EncodedPlace): ByteSource {
+  let at = place.begin;
+  return {
+    take: (count) => {
+      const bytes = reader.bytes(at, count, place.label);
+      at += count;
+      return bytes;
+    },
+    nextStream: () => undefined,
+    endsAfter: () => false,
+  };
+}
+
+const spaces = new Set([0x20, 0x0a, 0x0d, 0x09]);
+
+function withoutSpaces(bytes: Uint8Array): Uint8Array {
+  let kept = 0;
+  for (let i = 0; i < bytes.length; i += 1) {
+    const byte = bytes[i] as number;
+    if (!spaces.has(byte)) {
+      bytes[kept] = byte;
+      kept += 1;
+    }
+  }
+  return bytes.subarray(0, kept);
+}
+
+function textSource(reader: FileReader, place: EncodedPlace): ByteSource {
+  let at = place.begin;
+  let held: Uint8Array<ArrayBufferLike> = new Uint8Array(0);
+  let left: Uint8Array<ArrayBufferLike> = new Uint8Array(0);
+  /** The next `count` characters that are not white space. */
+  const characters = (count: number): Uint8Array => {
+    const parts: Uint8Array[] = [];
+    let have = 0;
+    while (have < count) {
+      if (held.length === 0) {
+        const length = Math.min(1 << 20, place.end - at);
+        if (length <= 0) throw fault(reader, place.label, 'the base64 text ends too early');
+        held = withoutSpaces(reader.bytes(at, length, place.label));
+        at += length;
+      }
+      const part = held.subarray(0, count - have);
+      parts.push(part);
+      held = held.subarray(part.length);
+      have += part.length;
+    }
+    return parts.length === 1 ? (parts[0] as Uint8Array) : Buffer.concat(parts);
+  };
+  const decode = (quads: Uint8Array): Uint8Array =>
+    Buffer.from(Buffer.from(quads.buffer, quads.byteOffset, quads.byteLength).toString('latin1'), 'base64');
+  return {
+    take: (count) => {
+      const out = new Uint8Array(count);
+      let have = Math.min(count, left.length);
+      out.set(left.subarray(0, have));
+      left = left.subarray(have);
+      while (have < count) {
+        const quads = Math.min(Math.ceil((count - have) / 3), 1 << 18);
+        const bytes = decode(characters(quads * 4));
+        if (bytes.length === 0) throw fault(reader, place.label, 'the base64 text is not valid');
+        const used = Math.min(bytes.length, count - have);
+        out.set(bytes.subarray(0, used), have);
+        have += used;
+        left = bytes.subarray(used);
+        if (bytes.length < quads * 3 && have < count)
+          throw fault(reader, place.label, 'the base64 text ends too early');
+      }
+      return out;
+    },
+    nextStream: () => {
+      left = new Uint8Array(0);
+    },
+    endsAfter: (count) => {
+      const first = reader.bytes(place.begin, Math.min(256, place.end - place.begin), place.label);
+      const clean = withoutSpaces(first);
+      return clean[Math.ceil(count / 3) * 4 - 1] === 0x3d;
+    },
+  };
+}
+
+function headerWords(bytes: Uint8Array, encoding: Encoding): number[] {
+  if (encoding.bigEndian) swapBytes(bytes, encoding.headerBytes);
+  const view = new DataView(bytes.buffer, bytes.byteOffset, bytes.byteLength);
+  const words: number[] = [];
+  for (let i = 0; i < bytes.byteLength; i += encoding.headerBytes) {
+    words.push(encoding.headerBytes === 4 ? view.getUint32(i, true) : Number(view.getBigUint64(i, true)));
+  }
+  return words;
+}
+
+/**
+ * Reads the header of an encoded array and its bytes, still compressed where the file compresses.
+ *
+ * @param expected  number of bytes the array must have, or undefined when only its own header says
+ */
+export function readPayload(
+  reader: FileReader,
+  place: EncodedPlace,
+  encoding: Encoding,
+  expected: number | undefined,
+): Payload {
+  const source = place.text ? textSource(reader, place) : rawSource(reader, place);
+  const h = encoding.headerBytes;
+  const mismatch = (total: number): InputError =>
+    fault(reader, place.label, `${total} bytes are announced where ${expected} are needed`);
+  if (encoding.compressor === 'none') {
+    const separate = source.endsAfter(h);
+    const [total = 0] = headerWords(source.take(h), encoding);
+    if (expected !== undefined && total !== expected) throw mismatch(total);
+    if (total > reader.size) throw fault(reader, place.label, `${total} bytes are announced, more than the file has`);
+    if (separate) source.nextStream();
+    return { bytes: total === 0 ? new Uint8Array(0) : source.take(total), total };
+  }
+  const firstBytes = source.take(h);
+  const [count = 0] = headerWords(firstBytes, encoding);
+  if (count * h > reader.size)
+    throw fault(reader, place.label, `${count} blocks are announced, more than the file has`);
+  const words = headerWords(source.take((2 + count) * h), encoding);
+  if (count === 0) {
+    if (expected !== undefined && expected !== 0) throw mismatch(0);
+    return { bytes: new Uint8Array(0), blocks: [], total: 0 };
+  }
+  const [full = 0, partial = 0] = words;
+  const total = partial === 0 || partial === full ? count * full : (count - 1) * full + partial;
+  if (total > mostBytes || full > mostBytes) throw fault(reader, place.label, `${total} bytes are announced`);
+  if (expected !== undefined && total !== expected) throw mismatch(total);
+  const blocks: { begin: number; size: number; full: number }[] = [];
+  let begin = 0;
+  for (let i = 0; i < count; i += 1) {
+    const size = words[2 + i] as number;
+    blocks.push({ begin, size, full: i === count - 1 && partial !== 0 ? partial : full });
+    begin += size;
+  }
+  if (begin > reader.size) throw fault(reader, place.label, `${begin} compressed bytes are announced`);
+  source.nextStream();
+  return { bytes: source.take(begin), blocks, total };
+}
+
+function expand(block: Uint8Array, full: number, compressor: Compressor): Uint8Array {
+  if (compressor === 'zlib') return inflateSync(block, { maxOutputLength: full });
+  const out = new Uint8Array(full);
+  const written = decompressBlock(block, out, 0, block.length, 0);
+  return out.subarray(0, written);
+}
+
+async function expandXz(block: Uint8Array): Promise<Uint8Array> {
+  const { XzReadableStream } = await import('xz-decompress');
+  const stream = new Blob([block as Uint8Array<ArrayBuffer>]).stream();
+  return new Uint8Array(await new Response(new XzReadableStream(stream)).arrayBuffer());
+}
+
+function joinBlock(
+  out: Uint8Array,
+  at: number,
+  bytes: Uint8Array,
+  full: number,
+  report: (cause: string) => InputError,
+): number {
+  if (bytes.length !== full) throw report(`a block expands to ${bytes.length} bytes where ${full} are announced`);
+  out.set(bytes, at);
+  return at + full;
+}
+
+/** Expands zlib and lz4 payloads. @throws InputError for damaged blocks */
+export function expandPayload(payload: Payload, reader: FileReader, label: string, compressor: Compressor): Uint8Array {
+  if (payload.blocks === undefined) return payload.bytes;
+  const report = (cause: string): InputError => fault(reader, label, cause);
+  const out = new Uint8Array(payload.total);
+  let at = 0;
+  for (const { begin, size, full } of payload.blocks) {
+    let bytes: Uint8Array;
+    try {
+      bytes = expand(payload.bytes.subarray(begin, begin + size), full, compressor);
+    } catch {
+      throw report(`a ${compressor} block cannot be expanded`);
+    }
+    at = joinBlock(out, at, bytes, full, report);
+  }
+  return out;
+}
+
+/** Expands LZMA (xz container) payloads, whose decoder works asynchronously. */
+export async function expandXzPayload(payload: Payload, reader: FileReader, label: string): Promise<Uint8Array> {
+  const report = (cause: string): InputError => fault(reader, label, cause);
+  const out = new Uint8Array(payload.total);
+  let at = 0;
+  for (const { begin, size, full } of payload.blocks ?? []) {
+    let bytes: Uint8Array;
+    try {
+      bytes = await expandXz(payload.bytes.subarray(begin, begin + size));
+    } catch {
+      throw report('an lzma block cannot be expanded');
+    }
+    at = joinBlock(out, at, bytes, full, report);
+  }
+  return out;
+}
