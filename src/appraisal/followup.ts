@@ -92,8 +92,7 @@ export interface FollowupReading {
 }
 
 /**
- * @param speed  m/s, for velocities: what errors of the mean are relative to; otherwise: the larger of mean and deviation,
- *   so that a lift coefficient of mean zero does not ask for ever
+ * @param speed  m/s, for velocities: what errors of the mean are relative to; otherwise: the larger of mean and deviation
  */
 function readSignal(
   history: History,
@@ -123,7 +122,10 @@ function readSignal(
       : { ...peak, strouhal: strouhal(peak.frequency, referenceLength, referenceSpeed) },
   );
   const scale = speed ?? Math.max(Math.abs(mean), Math.sqrt(variance));
-  const forMean = scale > 0 ? timeForMeanError(variance, integral, (options.meanError ?? 0.01) * scale) : 0;
+  const meanHalfWidth = 1.959964 * meanStandardError(variance, integral, duration);
+  // A mean that is zero within its interval has no relative error.
+  const noMean = speed === undefined && Math.abs(mean) <= meanHalfWidth;
+  const forMean = scale > 0 && !noMean ? timeForMeanError(variance, integral, (options.meanError ?? 0.01) * scale) : 0;
   const forVariance = timeForVarianceError(integral, options.varianceError ?? 0.05);
   return {
     name,
@@ -133,7 +135,7 @@ function readSignal(
     mean,
     deviation: Math.sqrt(variance),
     integralTime: integral,
-    meanHalfWidth: 1.959964 * meanStandardError(variance, integral, duration),
+    meanHalfWidth,
     spectrum,
     peaks,
     running: runningMean(rest, start + Math.max(0, cut) * step, step, integral),

@@ -151,7 +151,7 @@ export function drawChart(block: ChartBlock): { svg: string; data: ChartData } {
             : {}),
           lineStyle: {
             color: colour,
-            width: series.faint === true ? 1.2 : 2,
+            width: series.faint === true || points.x.length > 500 ? 1.2 : 2,
             type: series.faint === true ? [2, 3] : (dashes[tone % dashes.length]?.slice() ?? 'solid'),
           },
         };

@@ -38,7 +38,7 @@ function figureHead(title: string): string {
 function renderFigure(block: ChartBlock | PictureBlock, number: number): string {
   const drawn = block.type === 'chart' ? drawChart(block) : drawPicture(block);
   const svg = drawn.svg.replaceAll('clip-@', `clip-${number}`);
-  const caption = block.caption === '' ? '' : `<figcaption>${escapeHtml(block.caption)}</figcaption>`;
+  const caption = block.caption === '' ? '' : `<figcaption>${escapeHtml(capital(block.caption))}</figcaption>`;
   return (
     `<figure>${figureHead(block.title)}${block.type === 'chart' ? legend(block) : ''}` +
     `<div class="plot ${block.type}" tabindex="0" role="group" aria-label="${escapeHtml(block.title)}; arrow keys read values">${svg}</div>` +

@@ -76,7 +76,7 @@ a:focus-visible,button:focus-visible,[tabindex]:focus-visible{outline:3px solid 
 .legend .key{width:34px;height:12px;fill:none;flex:none}
 .scroll{overflow-x:auto}
 table{border-collapse:collapse;font-size:.94rem;min-width:min(100%,30rem)}
-th,td{padding:.36rem 1.3rem .36rem 0;text-align:left;vertical-align:top;border-bottom:1px solid var(--rule);max-width:34rem;overflow-wrap:break-word}
+th,td{padding:.36rem 1rem .36rem 0;text-align:left;vertical-align:top;border-bottom:1px solid var(--rule);max-width:34rem;overflow-wrap:break-word}
 thead th{border-bottom:2px solid var(--ink);font-weight:600;vertical-align:bottom}
 thead small{display:block;color:var(--soft);font-weight:400;font-size:.82rem}
 tbody th{font-weight:500}

@@ -222,6 +222,14 @@ describe('shedding', () => {
       expect(spectralPeaks(welchSpectrum(signal, 1e-4))).toEqual([]);
     }
   });
+
+  it('takes no steep bend of a spectrum for a line', () => {
+    for (let seed = 0; seed < 6; seed++) {
+      const bent = (f: number): number => (1 + (f / 6) ** 2) ** (-5 / 6) * 0.5 ** ((f / 150) ** 4);
+      const signal = withSpectrum(1 << 13, 1 / 2000, bent, `bent ${seed}`);
+      expect(spectralPeaks(welchSpectrum(signal, 1 / 2000))).toEqual([]);
+    }
+  });
 });
 
 describe('slope', () => {

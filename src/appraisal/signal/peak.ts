@@ -32,7 +32,9 @@ export function spectralPeaks(spectrum: PowerSpectrum, prominence = 5, count = 3
     const below = medianBetween(density, Math.max(1, k >> 1), k - 3);
     const above = medianBetween(density, k + 3, Math.min(last, 2 * k));
     const surroundings = Math.sqrt(below * above);
-    if (!(here > prominence * surroundings)) continue;
+    // Where a spectrum bends down steeply the surroundings lie below a bin that is no peak: ask for height over the near side too.
+    const near = medianBetween(density, Math.max(1, Math.floor(0.7 * k)), k - 3);
+    if (!(here > prominence * surroundings && here > 0.6 * prominence * near)) continue;
     const left = Math.log(density[k - 1] as number);
     const right = Math.log(density[k + 1] as number);
     const curvature = left - 2 * Math.log(here) + right;
