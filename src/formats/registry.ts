@@ -2,10 +2,11 @@ import { closeSync, openSync, readSync } from 'node:fs';
 import { extname } from 'node:path';
 import type { Dataset, Format, WriteRequest } from '../basis/dataset.js';
 import { InputError } from '../basis/errors.js';
+import { cgnsFormat } from './cgns.js';
 import { vtkFormats } from './vtk/formats.js';
 
 /** Every file format; the first that recognises a file reads it. */
-export const formats: readonly Format[] = [...vtkFormats];
+export const formats: readonly Format[] = [...vtkFormats, cgnsFormat];
 
 const headBytes = 4096;
 

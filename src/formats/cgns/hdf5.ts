@@ -3,14 +3,13 @@ import { devNull } from 'node:os';
 import { Attribute, Module, ready } from 'h5wasm/node';
 import type { NumberArray, NumberType } from '../../basis/dataset.js';
 import { InputError, MachineError } from '../../basis/errors.js';
+import { isHdf5 } from './signature.js';
 
 /** Values moved through WebAssembly memory at once; that memory never shrinks again, so pieces stay small. */
 const PIECE_BYTES = 8 * 1024 * 1024;
 
 /** No filter of HDF5 packs better than deflate's limit of about 1032 : 1. */
 const BEST_COMPRESSION = 1100;
-
-const SIGNATURE = [0x89, 0x48, 0x44, 0x46, 0x0d, 0x0a, 0x1a, 0x0a];
 
 /** An open file; every call on it is synchronous, so nothing else runs between opening and closing. */
 export interface Hdf5File {
@@ -74,7 +73,7 @@ export function requireHdf5(path: string): number {
     if (code === 'ENOENT') throw new InputError({ file: path, cause: 'there is no such file' });
     throw new MachineError({ file: path, cause: `the file cannot be read (${code ?? 'unknown reason'})` });
   }
-  if (!SIGNATURE.every((byte, i) => head[i] === byte)) {
+  if (!isHdf5(head)) {
     const old = head.toString('latin1').includes('ADF Database');
     throw new InputError({
       file: path,
@@ -222,13 +221,15 @@ function pieces(
 /**
  * Reads a data set piece by piece, in the order in which it lies in the file.
  *
- * @param use  gets each piece's values (its own memory only until the next piece) and the number of the first value
+ * @param use   gets each piece's values and the number of the first one
+ * @param rows  part along the slowest axis (default: all); numbers then count from its first value
  */
 export function readPieces(
   file: Hdf5File,
   path: string,
   info: Hdf5DataInfo,
   use: (values: NumberArray, begin: number) => void,
+  rows?: { readonly begin: number; readonly count: number },
 ): void {
   const text = info.size === 1 && info.shape.length > 0 && Module.get_dataset_metadata(file.id, path).type === 3;
   const shape = text ? info.shape.slice(0, -1) : info.shape;
@@ -239,7 +240,9 @@ export function readPieces(
   try {
     let begin = 0;
     const all = shape.length === 0;
-    pieces(all ? [0] : shape.map(() => 0), all ? [1] : shape, limit, (offset, count, tuples) => {
+    const from = shape.map((_, axis) => (axis === 0 ? (rows?.begin ?? 0) : 0));
+    const size = shape.map((n, axis) => (axis === 0 ? (rows?.count ?? n) : n));
+    pieces(all ? [0] : from, all ? [1] : size, limit, (offset, count, tuples) => {
       const status = Module.get_dataset_data(
         file.id,
         path,

@@ -121,7 +121,8 @@ export function readSolutions(
             remedy: 'export the file again',
           });
         }
-        if (conversion.doubt !== undefined) {
+        // Marks and counters are whole numbers and have no unit.
+        if (conversion.doubt !== undefined && node.data.type.startsWith('Float')) {
           const names = doubts.get(conversion.doubt) ?? new Set<string>();
           doubts.set(conversion.doubt, names.add(node.name));
         }
