@@ -1,3 +1,4 @@
+import { spawnSync } from 'node:child_process';
 import { describe, expect, it } from 'vitest';
 import {
   longitudinalLengthRatio,
@@ -22,6 +23,9 @@ const published: readonly (readonly [number, number, number, number])[] = [
   [20, 0.924, 0.858, 0.858],
   [32, 0.945, 0.896, 0.896],
 ];
+
+const scipyThere = spawnSync('/usr/bin/python3', ['-c', 'import scipy.integrate']).status === 0;
+if (!scipyThere) console.log('skipped: share of k against scipy (no scipy in /usr/bin/python3)');
 
 describe('special functions', () => {
   it('agree with closed forms', () => {
@@ -72,6 +76,45 @@ describe('share of k below the cut-off', () => {
       expect(resolvedShare(shareModel(), Math.PI * reach, reach)).toBeGreaterThan(0.9999);
       expect(resolvedShare(shareModel('pope'), Math.PI * reach, reach)).toBeGreaterThan(0.9999);
       expect(resolvedShare(shareModel(), Math.PI * reach)).toBeLessThan(0.999);
+    }
+  });
+
+  it.skipIf(!scipyThere)('agrees with adaptive quadrature of the dissipation-consistent spectrum by scipy', () => {
+    const program = `
+import json, numpy as np
+from scipy.integrate import quad
+from scipy.optimize import brentq
+from scipy.special import gamma
+peak = np.sqrt(np.pi) * gamma(5/6) / gamma(1/3)
+def density(s, c, h, power):
+    k = np.exp(s); x2 = (k * c / peak)**2
+    return k**(1 + power) * x2**2 * (1 + x2)**(-17/6) * np.exp(-2.25 * (k * h)**(4/3))
+def integral(c, h, power, end=12): return quad(density, -10, end, args=(c, h, power), limit=400)[0]
+out = []
+for reach, wave in [(20, 6), (89, 20), (146, 24), (2828, 20)]:
+    h = 1 / reach
+    c = brentq(lambda c: 2 * h**(4/3) * integral(c, h, 2) / integral(c, h, 0) - 1, 0.3, 2)
+    out.append([reach, wave, c, integral(c, h, 0, np.log(wave)) / integral(c, h, 0)])
+print(json.dumps(out))`;
+    const run = spawnSync('/usr/bin/python3', ['-c', program], { encoding: 'utf8' });
+    for (const [reach, wave, ratio, share] of JSON.parse(run.stdout) as [number, number, number, number][]) {
+      expect(Math.abs(longitudinalLengthRatio(shareModel(), reach) - ratio)).toBeLessThan(0.01);
+      expect(Math.abs(resolvedShare(shareModel(), wave, reach) - share)).toBeLessThan(2e-3);
+    }
+  });
+
+  it('predicts the share that the measured spectrum of Comte-Bellot & Corrsin (1971) holds', () => {
+    // Table 3 at tU0/M = 42, integrated by log splines with a k^2 tail: share below 1, 2, 4, 8 1/cm.
+    const k = 1.5 * 22.2 ** 2;
+    const length = k ** 1.5 / 4740;
+    const eta = (0.15 ** 3 / 4740) ** 0.25;
+    for (const [wave, share] of [
+      [1, 0.383],
+      [2, 0.611],
+      [4, 0.803],
+      [8, 0.938],
+    ] as const) {
+      expect(Math.abs(resolvedShare(shareModel(), wave * length, length / eta) - share)).toBeLessThan(0.045);
     }
   });
 });
