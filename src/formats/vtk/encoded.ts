@@ -2,7 +2,7 @@ import { inflateSync } from 'node:zlib';
 import { decompressBlock } from 'lz4js';
 import { InputError } from '../../basis/errors.js';
 import type { FileReader } from '../file-reader.js';
-import { swapBytes } from './numbers.js';
+import { allocate, swapBytes } from './numbers.js';
 
 export type Compressor = 'none' | 'zlib' | 'lz4' | 'lzma';
 
@@ -31,7 +31,11 @@ export interface Payload {
   readonly total: number;
 }
 
-const mostBytes = 2 ** 36;
+/**
+ * Most bytes that one compressed byte can stand for: deflate 1032 (RFC 1951: 258 bytes in 2 bits), LZ4 255 (a length
+ * byte), LZMA about 7000 (measured on zeros). What a header promises beyond that is refused before memory is taken.
+ */
+const largestRatio = { none: 1, zlib: 1032, lz4: 255, lzma: 10_000 } as const;
 
 function fault(reader: FileReader, label: string, cause: string): InputError {
   return new InputError({ file: reader.path, place: label, cause, remedy: 'the file is damaged; write it again' });
@@ -172,7 +176,6 @@ export function readPayload(
   }
   const [full = 0, partial = 0] = words;
   const total = partial === 0 || partial === full ? count * full : (count - 1) * full + partial;
-  if (total > mostBytes || full > mostBytes) throw fault(reader, place.label, `${total} bytes are announced`);
   if (expected !== undefined && total !== expected) throw mismatch(total);
   const blocks: { begin: number; size: number; full: number }[] = [];
   let begin = 0;
@@ -182,6 +185,9 @@ export function readPayload(
     begin += size;
   }
   if (begin > reader.size) throw fault(reader, place.label, `${begin} compressed bytes are announced`);
+  if (total > begin * largestRatio[encoding.compressor]) {
+    throw fault(reader, place.label, `${total} bytes are announced in ${begin} compressed ones`);
+  }
   source.nextStream();
   return { bytes: source.take(begin), blocks, total };
 }
@@ -189,14 +195,24 @@ export function readPayload(
 function expand(block: Uint8Array, full: number, compressor: Compressor): Uint8Array {
   if (compressor === 'zlib') return inflateSync(block, { maxOutputLength: full });
   const out = new Uint8Array(full);
+  // The decoder drops what it writes behind the end, but counts it.
   const written = decompressBlock(block, out, 0, block.length, 0);
-  return out.subarray(0, written);
+  if (written !== full) throw new RangeError(`${written} bytes`);
+  return out;
 }
 
-async function expandXz(block: Uint8Array): Promise<Uint8Array> {
+/** Expands one xz stream to at most `full` bytes and one chunk more, so that a bomb is noticed and not stored. */
+async function expandXz(block: Uint8Array, full: number): Promise<Uint8Array> {
   const { XzReadableStream } = await import('xz-decompress');
-  const stream = new Blob([block as Uint8Array<ArrayBuffer>]).stream();
-  return new Uint8Array(await new Response(new XzReadableStream(stream)).arrayBuffer());
+  const stream = new XzReadableStream(new Blob([block as Uint8Array<ArrayBuffer>]).stream());
+  const out = new Uint8Array(full);
+  let at = 0;
+  for await (const chunk of stream) {
+    if (at + chunk.length > full) throw new RangeError('more bytes than announced');
+    out.set(chunk, at);
+    at += chunk.length;
+  }
+  return out.subarray(0, at);
 }
 
 function joinBlock(
@@ -215,7 +231,7 @@ function joinBlock(
 export function expandPayload(payload: Payload, reader: FileReader, label: string, compressor: Compressor): Uint8Array {
   if (payload.blocks === undefined) return payload.bytes;
   const report = (cause: string): InputError => fault(reader, label, cause);
-  const out = new Uint8Array(payload.total);
+  const out = allocate(reader.path, label, () => new Uint8Array(payload.total));
   let at = 0;
   for (const { begin, size, full } of payload.blocks) {
     let bytes: Uint8Array;
@@ -232,12 +248,13 @@ export function expandPayload(payload: Payload, reader: FileReader, label: strin
 /** Expands LZMA (xz container) payloads, whose decoder works asynchronously. */
 export async function expandXzPayload(payload: Payload, reader: FileReader, label: string): Promise<Uint8Array> {
   const report = (cause: string): InputError => fault(reader, label, cause);
-  const out = new Uint8Array(payload.total);
+  if (payload.blocks === undefined) return payload.bytes;
+  const out = allocate(reader.path, label, () => new Uint8Array(payload.total));
   let at = 0;
-  for (const { begin, size, full } of payload.blocks ?? []) {
+  for (const { begin, size, full } of payload.blocks) {
     let bytes: Uint8Array;
     try {
-      bytes = await expandXz(payload.bytes.subarray(begin, begin + size));
+      bytes = await expandXz(payload.bytes.subarray(begin, begin + size), full);
     } catch {
       throw report('an lzma block cannot be expanded');
     }

@@ -1,4 +1,5 @@
 import type { NumberArray, NumberType } from '../../basis/dataset.js';
+import { MachineError } from '../../basis/errors.js';
 
 type ArrayMaker = new (buffer: ArrayBuffer, offset?: number, length?: number) => NumberArray;
 
@@ -41,12 +42,28 @@ export function createNumbers(type: NumberType, length: number): NumberArray {
   return new make(new ArrayBuffer(length * bytes));
 }
 
+/** Makes an array, or says in one sentence that the machine has not the memory for it. */
+export function allocate<T>(file: string, place: string, make: () => T): T {
+  try {
+    return make();
+  } catch (error) {
+    if (error instanceof RangeError) throw new MachineError({ file, place, cause: 'not enough memory for this array' });
+    throw error;
+  }
+}
+
+const swapStep = 1 << 30;
+
 /** Reverses the bytes of every item in place. */
 export function swapBytes(bytes: Uint8Array, width: number): void {
-  const buffer = Buffer.from(bytes.buffer, bytes.byteOffset, bytes.byteLength - (bytes.byteLength % width));
-  if (width === 2) buffer.swap16();
-  else if (width === 4) buffer.swap32();
-  else if (width === 8) buffer.swap64();
+  if (width === 1) return;
+  const whole = bytes.byteLength - (bytes.byteLength % width);
+  for (let at = 0; at < whole; at += swapStep) {
+    const part = Buffer.from(bytes.buffer, bytes.byteOffset + at, Math.min(swapStep, whole - at));
+    if (width === 2) part.swap16();
+    else if (width === 4) part.swap32();
+    else part.swap64();
+  }
 }
 
 export function numberTypeOf(values: NumberArray): NumberType {
