@@ -13,12 +13,14 @@ export interface NearestTriangle {
   /** Number of the triangle as given to `buildTriangleTree`, -1 when none is closer than the limit. */
   triangle: number;
   distance2: number;
+  /** Its place in the tree's order, -1 when none. */
+  place: number;
   /** Nodes and triangles are searched with this place first; keep it between near-by queries. */
   hint: number;
 }
 
 export function createNearestTriangle(): NearestTriangle {
-  return { triangle: -1, distance2: Infinity, hint: -1 };
+  return { triangle: -1, distance2: Infinity, place: -1, hint: -1 };
 }
 
 /** @param triangles  9 x n: three vertices each, metres */
@@ -169,6 +171,75 @@ export function nearestTriangle(
     }
   }
   result.triangle = place < 0 ? -1 : items[place]!;
+  result.place = place;
   if (place >= 0) result.hint = place;
   result.distance2 = best;
+}
+
+/**
+ * Nearest point of a triangle.
+ *
+ * @param place  place of the triangle in the tree's order
+ * @param out    3, written
+ */
+export function closestOnTriangle(
+  triangles: TriangleTree,
+  place: number,
+  x: number,
+  y: number,
+  z: number,
+  out: Float64Array,
+): void {
+  const c = triangles.corners;
+  const o = 9 * place;
+  const p = [x, y, z];
+  const along = (from: number, to: number): [number, number] => {
+    // Nearest point of an edge: share of the way, squared distance.
+    let uu = 0;
+    let up = 0;
+    for (let a = 0; a < 3; a++) {
+      const u = c[to + a]! - c[from + a]!;
+      uu += u * u;
+      up += u * (p[a]! - c[from + a]!);
+    }
+    const t = uu > 0 ? Math.min(1, Math.max(0, up / uu)) : 0;
+    let d2 = 0;
+    for (let a = 0; a < 3; a++) d2 += (p[a]! - c[from + a]! - t * (c[to + a]! - c[from + a]!)) ** 2;
+    return [t, d2];
+  };
+  let uu = 0;
+  let uv = 0;
+  let vv = 0;
+  let up = 0;
+  let vp = 0;
+  for (let a = 0; a < 3; a++) {
+    const u = c[o + 3 + a]! - c[o + a]!;
+    const v = c[o + 6 + a]! - c[o + a]!;
+    const q = p[a]! - c[o + a]!;
+    uu += u * u;
+    uv += u * v;
+    vv += v * v;
+    up += u * q;
+    vp += v * q;
+  }
+  const det = uu * vv - uv * uv;
+  const s = vv * up - uv * vp;
+  const t = uu * vp - uv * up;
+  if (det > 0 && s >= 0 && t >= 0 && s + t <= det) {
+    for (let a = 0; a < 3; a++)
+      out[a] = c[o + a]! + (s / det) * (c[o + 3 + a]! - c[o + a]!) + (t / det) * (c[o + 6 + a]! - c[o + a]!);
+    return;
+  }
+  let best = Infinity;
+  for (const [from, to] of [
+    [o, o + 3],
+    [o + 3, o + 6],
+    [o + 6, o],
+  ] as const) {
+    const [share, d2] = along(from, to);
+    if (d2 < best) {
+      best = d2;
+      for (let a = 0; a < 3; a++) out[a] = c[from + a]! + share * (c[to + a]! - c[from + a]!);
+    }
+  }
 }
