@@ -1,5 +1,5 @@
 import { closeSync, fstatSync, openSync, readSync } from 'node:fs';
-import { InputError } from '../basis/errors.js';
+import { InputError, MachineError } from '../basis/errors.js';
 
 /** Reads slices of a file by position. */
 export interface FileReader {
@@ -14,10 +14,28 @@ export interface FileReader {
 
 const largestRead = 1 << 30;
 
-/** @throws the file system's own error when the file cannot be opened */
+function refusal(path: string, code: string | undefined): InputError | MachineError {
+  if (code === 'ENOENT' || code === 'ENOTDIR') {
+    return new InputError({ file: path, cause: 'there is no such file', remedy: 'check the path' });
+  }
+  if (code === 'EISDIR') return new InputError({ file: path, cause: 'this is a folder', remedy: 'name a file' });
+  return new MachineError({ file: path, cause: `the file cannot be opened (${code ?? 'unknown reason'})` });
+}
+
+/** @throws InputError when there is no such file, MachineError when the system refuses to open it */
 export function openFile(path: string): FileReader {
-  const handle = openSync(path, 'r');
-  const size = fstatSync(handle).size;
+  let handle: number;
+  try {
+    handle = openSync(path, 'r');
+  } catch (error) {
+    throw refusal(path, (error as NodeJS.ErrnoException).code);
+  }
+  const status = fstatSync(handle);
+  if (status.isDirectory()) {
+    closeSync(handle);
+    throw refusal(path, 'EISDIR');
+  }
+  const { size } = status;
   const into = (target: Uint8Array, begin: number, place?: string): void => {
     if (begin < 0 || begin + target.byteLength > size) {
       throw new InputError({

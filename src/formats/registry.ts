@@ -1,23 +1,18 @@
-import { closeSync, openSync, readSync } from 'node:fs';
 import { extname } from 'node:path';
 import type { Dataset, Format, WriteRequest } from '../basis/dataset.js';
 import { InputError } from '../basis/errors.js';
 import { cgnsFormat } from './cgns.js';
+import { csvFormat } from './csv.js';
+import { withFile } from './file-reader.js';
 import { vtkFormats } from './vtk/formats.js';
 
 /** Every file format; the first that recognises a file reads it. */
-export const formats: readonly Format[] = [...vtkFormats, cgnsFormat];
+export const formats: readonly Format[] = [...vtkFormats, cgnsFormat, csvFormat];
 
 const headBytes = 4096;
 
 function readHeadBytes(path: string): Uint8Array {
-  const handle = openSync(path, 'r');
-  try {
-    const head = new Uint8Array(headBytes);
-    return head.subarray(0, readSync(handle, head, 0, headBytes, 0));
-  } finally {
-    closeSync(handle);
-  }
+  return withFile(path, (reader) => reader.bytes(0, Math.min(headBytes, reader.size)));
 }
 
 function listOf(wanted: readonly Format[]): string {
@@ -27,7 +22,7 @@ function listOf(wanted: readonly Format[]): string {
 /**
  * The format of an existing file, by its first bytes or its extension.
  *
- * @throws InputError when no format recognises it; the file system's error when it cannot be opened
+ * @throws InputError when there is no such file or no format recognises it, MachineError when it cannot be opened
  */
 export async function findFormat(path: string): Promise<Format> {
   const head = readHeadBytes(path);

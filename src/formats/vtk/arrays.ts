@@ -2,7 +2,14 @@ import type { DataArray, NumberArray, NumberType } from '../../basis/dataset.js'
 import { InputError } from '../../basis/errors.js';
 import { type FileReader, withFile } from '../file-reader.js';
 import { readAscii } from './ascii.js';
-import { type EncodedPlace, type Encoding, expandPayload, expandXzPayload, readPayload } from './encoded.js';
+import {
+  checkAnnounced,
+  type EncodedPlace,
+  type Encoding,
+  expandPayload,
+  expandXzPayload,
+  readPayload,
+} from './encoded.js';
 import type { Element, Head } from './head.js';
 import { bytesOf, isNumberType, swapBytes, viewAs } from './numbers.js';
 
@@ -60,10 +67,11 @@ function placeOf(element: Element, label: string, context: FileContext): Encoded
   if (element.attributes.format === 'appended') {
     if (appended === undefined) throw fault(reader, label, 'the array is appended but the file has no appended data');
     const offset = Number(element.attributes.offset);
-    if (!Number.isInteger(offset) || offset < 0 || appended.begin + offset >= reader.size) {
-      throw fault(reader, label, `offset '${element.attributes.offset}' lies outside the file (${reader.size} bytes)`);
+    if (!Number.isInteger(offset) || offset < 0 || appended.begin + offset >= appended.end) {
+      const length = appended.end - appended.begin;
+      throw fault(reader, label, `offset '${element.attributes.offset}' lies outside the ${length} appended bytes`);
     }
-    return { begin: appended.begin + offset, end: reader.size, text: appended.encoding === 'base64', label };
+    return { begin: appended.begin + offset, end: appended.end, text: appended.encoding === 'base64', label };
   }
   const [range] = element.text;
   if (range === undefined) throw fault(reader, label, 'the array is empty');
@@ -128,21 +136,6 @@ export async function readArray(element: Element, context: FileContext, wish: Ar
         context,
       ),
     );
-  if (place.text || encoding.compressor !== 'none') return finish(load);
-  // Announced sizes are checked at once, so that a truncated file is refused before any work is done.
-  checkRawSize(reader, place, encoding, expected);
-  return finish(load);
-}
-
-function checkRawSize(reader: FileReader, place: EncodedPlace, encoding: Encoding, expected?: number): void {
-  const bytes = reader.bytes(place.begin, encoding.headerBytes, place.label);
-  if (encoding.bigEndian) swapBytes(bytes, encoding.headerBytes);
-  const view = new DataView(bytes.buffer, bytes.byteOffset);
-  const total = encoding.headerBytes === 4 ? view.getUint32(0, true) : Number(view.getBigUint64(0, true));
-  if (expected !== undefined && total !== expected) {
-    throw fault(reader, place.label, `${total} bytes are announced where ${expected} are needed`);
-  }
-  if (place.begin + encoding.headerBytes + total > reader.size) {
-    throw fault(reader, place.label, `the file ends before the array does (${total} bytes announced); it is truncated`);
-  }
+  // Announced sizes are checked at once, so that a damaged file is refused before any work is done.
+  return finish(load, checkAnnounced(reader, place, encoding, expected) / bytesOf(type));
 }

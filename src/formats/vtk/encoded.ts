@@ -55,7 +55,8 @@ function rawSource(reader: FileReader, place: EncodedPlace): ByteSource {
   let at = place.begin;
   return {
     take: (count) => {
-      const bytes = reader.bytes(at, count, place.label);
+      if (at + count > place.end) throw fault(reader, place.label, `the data end before the array does`);
+      const bytes = allocate(reader.path, place.label, () => reader.bytes(at, count, place.label));
       at += count;
       return bytes;
     },
@@ -88,7 +89,8 @@ function textSource(reader: FileReader, place: EncodedPlace): ByteSource {
     let have = 0;
     while (have < count) {
       if (held.length === 0) {
-        const length = Math.min(1 << 20, place.end - at);
+        // A header needs few characters, data many.
+        const length = Math.min(at === place.begin ? 1 << 12 : 1 << 20, place.end - at);
         if (length <= 0) throw fault(reader, place.label, 'the base64 text ends too early');
         held = withoutSpaces(reader.bytes(at, length, place.label));
         at += length;
@@ -104,7 +106,7 @@ function textSource(reader: FileReader, place: EncodedPlace): ByteSource {
     Buffer.from(Buffer.from(quads.buffer, quads.byteOffset, quads.byteLength).toString('latin1'), 'base64');
   return {
     take: (count) => {
-      const out = new Uint8Array(count);
+      const out = allocate(reader.path, place.label, () => new Uint8Array(count));
       let have = Math.min(count, left.length);
       out.set(left.subarray(0, have));
       left = left.subarray(have);
@@ -142,54 +144,83 @@ function headerWords(bytes: Uint8Array, encoding: Encoding): number[] {
   return words;
 }
 
+interface Announced {
+  readonly source: ByteSource;
+  readonly blocks?: Payload['blocks'];
+  /** Uncompressed bytes. */
+  readonly total: number;
+  /** Bytes as they are stored. */
+  readonly stored: number;
+}
+
+/** Blocks of a compressed array by its header: number, size, size of a shorter last one, compressed sizes. */
+function announcedBlocks(reader: FileReader, place: EncodedPlace, encoding: Encoding, source: ByteSource): Announced {
+  const h = encoding.headerBytes;
+  const [count = 0] = headerWords(source.take(h), encoding);
+  if (count * h > place.end - place.begin) {
+    throw fault(reader, place.label, `${count} blocks are announced, more than the file has`);
+  }
+  const words = headerWords(source.take((2 + count) * h), encoding);
+  if (count === 0) return { source, blocks: [], total: 0, stored: 0 };
+  const [full = 0, partial = 0] = words;
+  if (partial > full) throw fault(reader, place.label, `a last block of ${partial} bytes where all have ${full}`);
+  const blocks: { begin: number; size: number; full: number }[] = [];
+  let stored = 0;
+  for (let i = 0; i < count; i += 1) {
+    const size = words[2 + i] as number;
+    blocks.push({ begin: stored, size, full: i === count - 1 && partial !== 0 ? partial : full });
+    stored += size;
+  }
+  const total = (count - 1) * full + (partial === 0 ? full : partial);
+  if (total > stored * largestRatio[encoding.compressor]) {
+    throw fault(reader, place.label, `${total} bytes are announced in ${stored} compressed ones`);
+  }
+  source.nextStream();
+  return { source, blocks, total, stored };
+}
+
 /**
- * Reads the header of an encoded array and its bytes, still compressed where the file compresses.
+ * Reads the header of an encoded array and checks it against what the file holds.
  *
  * @param expected  number of bytes the array must have, or undefined when only its own header says
+ * @throws InputError when the header announces another size or more than there is
  */
-export function readPayload(
+function readAnnounced(
   reader: FileReader,
   place: EncodedPlace,
   encoding: Encoding,
   expected: number | undefined,
-): Payload {
+): Announced {
   const source = place.text ? textSource(reader, place) : rawSource(reader, place);
-  const h = encoding.headerBytes;
-  const mismatch = (total: number): InputError =>
-    fault(reader, place.label, `${total} bytes are announced where ${expected} are needed`);
+  let announced: Announced;
   if (encoding.compressor === 'none') {
-    const separate = source.endsAfter(h);
-    const [total = 0] = headerWords(source.take(h), encoding);
-    if (expected !== undefined && total !== expected) throw mismatch(total);
-    if (total > reader.size) throw fault(reader, place.label, `${total} bytes are announced, more than the file has`);
+    const separate = source.endsAfter(encoding.headerBytes);
+    const [total = 0] = headerWords(source.take(encoding.headerBytes), encoding);
     if (separate) source.nextStream();
-    return { bytes: total === 0 ? new Uint8Array(0) : source.take(total), total };
+    announced = { source, total, stored: total };
+  } else {
+    announced = announcedBlocks(reader, place, encoding, source);
   }
-  const firstBytes = source.take(h);
-  const [count = 0] = headerWords(firstBytes, encoding);
-  if (count * h > reader.size)
-    throw fault(reader, place.label, `${count} blocks are announced, more than the file has`);
-  const words = headerWords(source.take((2 + count) * h), encoding);
-  if (count === 0) {
-    if (expected !== undefined && expected !== 0) throw mismatch(0);
-    return { bytes: new Uint8Array(0), blocks: [], total: 0 };
+  const { total, stored } = announced;
+  if (expected !== undefined && total !== expected) {
+    throw fault(reader, place.label, `${total} bytes are announced where ${expected} are needed`);
   }
-  const [full = 0, partial = 0] = words;
-  const total = partial === 0 || partial === full ? count * full : (count - 1) * full + partial;
-  if (expected !== undefined && total !== expected) throw mismatch(total);
-  const blocks: { begin: number; size: number; full: number }[] = [];
-  let begin = 0;
-  for (let i = 0; i < count; i += 1) {
-    const size = words[2 + i] as number;
-    blocks.push({ begin, size, full: i === count - 1 && partial !== 0 ? partial : full });
-    begin += size;
+  if ((place.text ? Math.ceil(stored / 3) * 4 : stored) > place.end - place.begin) {
+    throw fault(reader, place.label, `${stored} bytes are announced, more than there are`);
   }
-  if (begin > reader.size) throw fault(reader, place.label, `${begin} compressed bytes are announced`);
-  if (total > begin * largestRatio[encoding.compressor]) {
-    throw fault(reader, place.label, `${total} bytes are announced in ${begin} compressed ones`);
-  }
-  source.nextStream();
-  return { bytes: source.take(begin), blocks, total };
+  return announced;
+}
+
+/** Checks the header of an array without reading the data; returns their number of bytes. */
+export function checkAnnounced(...array: Parameters<typeof readAnnounced>): number {
+  return readAnnounced(...array).total;
+}
+
+/** Reads the bytes of an array, still compressed where the file compresses. */
+export function readPayload(...array: Parameters<typeof readAnnounced>): Payload {
+  const { source, blocks, total, stored } = readAnnounced(...array);
+  const bytes = stored === 0 ? new Uint8Array(0) : source.take(stored);
+  return blocks === undefined ? { bytes, total } : { bytes, blocks, total };
 }
 
 function expand(block: Uint8Array, full: number, compressor: Compressor): Uint8Array {

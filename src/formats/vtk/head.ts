@@ -13,8 +13,8 @@ export interface Element {
 
 export interface Head {
   readonly root: Element;
-  /** Appended data: the byte behind the `_`, and how they are encoded. */
-  readonly appended?: { readonly begin: number; readonly encoding: 'raw' | 'base64' };
+  /** Appended data: the byte behind the `_`, the first byte behind them, and how they are encoded. */
+  readonly appended?: { readonly begin: number; readonly end: number; readonly encoding: 'raw' | 'base64' };
 }
 
 const chunkBytes = 1 << 20;
@@ -65,6 +65,17 @@ function createScanner(reader: FileReader) {
   return { at, find, tagEnd };
 }
 
+/** Where the appended data end: only the tags behind them prove that the file is whole. */
+function appendedEnd(reader: FileReader, begin: number): number {
+  const tailBegin = Math.max(begin, reader.size - 4096);
+  const tail = Buffer.from(reader.bytes(tailBegin, reader.size - tailBegin));
+  const close = tail.lastIndexOf('</AppendedData');
+  if (close < 0 || tail.indexOf('</VTKFile', close) < 0) {
+    throw bad(reader.path, 'the file ends before its appended data are closed: it is truncated');
+  }
+  return tailBegin + close;
+}
+
 /**
  * Reads the tags of a VTK XML file up to its appended data. Only tags pass through the XML parser, so a file with
  * raw appended bytes (not well-formed as a whole) and inline arrays of any size are fine.
@@ -96,6 +107,7 @@ export function readHead(reader: FileReader): Head {
     stack.pop();
   });
 
+  if (reader.size === 0) throw new InputError({ file, cause: 'the file is empty' });
   let position = scanner.find(lessThan, 0);
   if (position < 0 || position > 4096) throw bad(file, 'the file does not begin like XML');
   while (position >= 0) {
@@ -122,7 +134,7 @@ export function readHead(reader: FileReader): Head {
       const encoding = open.attributes.encoding ?? 'base64';
       if (encoding !== 'raw' && encoding !== 'base64') throw bad(file, `appended encoding '${encoding}' is not known`);
       if (root === undefined) break;
-      return { root, appended: { begin: mark + 1, encoding } };
+      return { root, appended: { begin: mark + 1, end: appendedEnd(reader, mark + 1), encoding } };
     }
     if (root !== undefined && open === undefined) return { root };
     position = scanner.find(lessThan, end + 1);
