@@ -90,7 +90,9 @@ function chart(figure, data) {
     r.layer.replaceChildren();
     const px = placeX(x);
     element('path', { class: 'cross', d: 'M' + px + ' ' + top + 'V' + bottom }, r.layer);
-    const lines = [data.x.label + ': ' + show(x)];
+    const bins = data.series.find((s) => s.steps);
+    const next = bins === undefined ? undefined : bins.x[bins.x.indexOf(x) + 1];
+    const lines = [data.x.label + ': ' + show(x) + (bins !== undefined && bins.x.includes(x) && next !== undefined ? ' to ' + show(next) : '')];
     for (const s of data.series) {
       const y = valueAt(s, x);
       if (y === null || y === undefined) continue;
@@ -134,7 +136,7 @@ function picture(figure, data) {
     r.layer.replaceChildren();
     const px = left + ((column + 0.5) / data.width) * (right - left);
     const py = top + ((row + 0.5) / data.height) * (bottom - top);
-    element('path', { class: 'cross on-picture', d: 'M' + (px - 9) + ' ' + py + 'h18M' + px + ' ' + (py - 9) + 'v18' }, r.layer);
+    for (const kind of ['under', 'over']) element('path', { class: 'cross on-picture ' + kind, d: 'M' + (px - 9) + ' ' + py + 'h18M' + px + ' ' + (py - 9) + 'v18' }, r.layer);
     const value = valueOf(row * data.width + column);
     r.write(data.axes[0] + ' ' + show(place(column)) + ' m, ' + data.axes[1] + ' ' + show(placeB(row)) + ' m\\n' + data.quantity + ': ' + (Number.isNaN(value) ? 'outside the mesh' : show(value) + ' ' + data.unit), px, py);
   };

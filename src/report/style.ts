@@ -67,7 +67,8 @@ a:focus-visible,button:focus-visible,[tabindex]:focus-visible{outline:3px solid 
 .plot .probe{fill:#fff;stroke:#111;stroke-width:2}
 .plot .probe-label{font-size:12px;fill:#111;paint-order:stroke;stroke:#fff;stroke-width:3.5px;stroke-linejoin:round}
 .plot .cross{stroke:var(--ink);stroke-width:1;pointer-events:none}
-.plot .cross.on-picture{stroke:#fff;stroke-width:1.6;mix-blend-mode:difference}
+.plot .on-picture.under{stroke:#111;stroke-width:4}
+.plot .on-picture.over{stroke:#fff;stroke-width:1.6}
 .plot .dot{fill:var(--paper);stroke:var(--ink);stroke-width:2;pointer-events:none}
 .reading{position:absolute;z-index:3;max-width:19rem;padding:.4rem .65rem;background:var(--ink);color:var(--paper);font-size:.86rem;line-height:1.4;pointer-events:none;border-radius:2px;white-space:pre-line;overflow-wrap:anywhere}
 .reading[hidden]{display:none}
