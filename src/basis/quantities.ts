@@ -8,7 +8,7 @@ import { componentSuffixes, type Quantity } from './quantity-table.js';
 
 export { fieldsToArrays } from './fields-to-arrays.js';
 export { toFloat64 } from './number-arrays.js';
-export { isStandardName, standardNames } from './quantity-slots.js';
+export { isStandardName, quantityOf, standardNameOf, standardNames } from './quantity-slots.js';
 export {
   componentSuffixes,
   type Dimension,

@@ -42,3 +42,13 @@ export const standardNames: readonly string[] = [...slots.values()].map((slot) =
 export function isStandardName(name: string): boolean {
   return slots.has(name.toLowerCase());
 }
+
+/** The standard spelling of a name, aliases resolved; undefined for names that are not standard. */
+export function standardNameOf(name: string): string | undefined {
+  return slotOf(name)?.standard;
+}
+
+/** The quantity that a standard name, gathered or of one component, belongs to. */
+export function quantityOf(name: string): Quantity | undefined {
+  return slotOf(name)?.quantity;
+}

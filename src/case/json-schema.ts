@@ -41,9 +41,12 @@ function children(node: SchemaNode, step: PropertyKey): SchemaNode[] {
   return found;
 }
 
+let whole: SchemaNode | undefined;
+
 /** Every part of the schema that may describe the value at this place of a case file. */
 export function schemaNodesAt(path: readonly PropertyKey[]): SchemaNode[] {
-  let nodes: SchemaNode[] = [caseJsonSchema()];
+  whole ??= caseJsonSchema();
+  let nodes: SchemaNode[] = [whole];
   for (const step of path) nodes = nodes.flatMap((node) => children(node, step));
   return nodes;
 }

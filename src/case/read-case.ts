@@ -2,6 +2,7 @@ import { readFile } from 'node:fs/promises';
 import { basename, dirname, extname, isAbsolute, join, resolve } from 'node:path';
 import { InputError } from '../basis/errors.js';
 import { type CaseFault, faultOf } from './issue-sentence.js';
+import { type SchemaNode, schemaNodesAt } from './json-schema.js';
 import type { FaceSelection } from './parts.js';
 import { type Case, caseSchema, type FluctuationSettings, type TargetSettings } from './schema.js';
 import { parseYaml } from './yaml-text.js';
@@ -116,6 +117,21 @@ function contradiction(parsed: Case): CaseFault | undefined {
   return undefined;
 }
 
+function mayBeEmpty(node: SchemaNode): boolean {
+  if (node.anyOf !== undefined) return node.anyOf.some(mayBeEmpty);
+  return node.type === 'object' && (node.required === undefined || node.required.length === 0);
+}
+
+/** A section of which only comments are left is an empty one. */
+function withEmptySections(value: unknown, path: readonly PropertyKey[]): unknown {
+  if (value === null && schemaNodesAt(path).some(mayBeEmpty)) return {};
+  if (value === null || typeof value !== 'object') return value;
+  if (Array.isArray(value)) return value.map((entry, at) => withEmptySections(entry, [...path, at]));
+  return Object.fromEntries(
+    Object.entries(value).map(([key, entry]) => [key, withEmptySections(entry, [...path, key])]),
+  );
+}
+
 /**
  * Checks the text of a case file.
  *
@@ -135,9 +151,10 @@ export function parseCase(text: string, file: string): ResolvedCase {
       remedy: found.remedy,
     });
   };
-  const result = caseSchema.safeParse(yaml.value);
+  const value = withEmptySections(yaml.value, []);
+  const result = caseSchema.safeParse(value);
   if (!result.success) {
-    const faults = result.error.issues.map((issue) => faultOf(issue, [], yaml.value));
+    const faults = result.error.issues.map((issue) => faultOf(issue, [], value));
     // A misspelt key is often why another one is missing: it is named first, then what stands highest in the file.
     const order = (fault: CaseFault): number => (fault.atKey ? 0 : 1e9) + yaml.lineOf(fault.path, fault.atKey);
     throw complain(faults.sort((a, b) => order(a) - order(b))[0]!);

@@ -81,6 +81,12 @@ describe('parseCase', () => {
     expect(found.output.report).toBe('here/start.html');
   });
 
+  it('takes a section of comments for an empty one, but no empty value', () => {
+    const text = `${least}fluctuations:\n  # shells: 3\ntransfer:\n`;
+    expect(parseCase(text, 'a').fluctuations).toEqual(fluctuationDefaults);
+    expect(complaint(`${least}transfer:\n  method:\n`)).toContain('line 5, transfer.method: nothing (an empty value)');
+  });
+
   it('keeps absolute paths and leaves the report out on request', () => {
     const found = parseCase(
       least.replace('start.vtu}', 'start.vtu, report: none}').replace('fine.vtu', '/m/f.vtu'),
