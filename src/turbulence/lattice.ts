@@ -97,11 +97,20 @@ export function snapKeepingLength(frame: Frame, direction: Vector, length: numbe
  * With three periodic axes: a lattice vector with low <= |K| < high near `direction`; the length is drawn evenly in its
  * logarithm. Directions are varied until one fits.
  *
+ * @param start  number of vectors refused before: the more, the further from `direction` is sought
+ *
  * @throws InputError when the shell holds no lattice vector
  */
-export function snapInside(frame: Frame, direction: Vector, low: number, high: number, random: () => number): Vector {
+export function snapInside(
+  frame: Frame,
+  direction: Vector,
+  low: number,
+  high: number,
+  random: () => number,
+  start = 0,
+): Vector {
   const d = frame.axes.map((axis) => dot(axis, direction));
-  for (let attempt = 0; attempt < 2000; attempt++) {
+  for (let attempt = start; attempt < 2000; attempt++) {
     const length = low * (high / low) ** random();
     // Away from the first few tries the direction spreads: low shells hold few vectors.
     const spread = Math.min(1.5, 0.02 * attempt);

@@ -127,15 +127,24 @@ export function createModes(options: ModeOptions): ModeSet {
   // Directions that do not fill a triad go on in the next shell, so that neighbouring shells complete each other.
   let spare: { axes: [Vector, Vector, Vector]; used: number } | undefined;
   const triads = Math.floor(directions / 3);
+  const met = new Set<string>();
   for (let s = 0; s < shells; s++) {
     const place = (mode: number, d: Vector, a: Vector): void => {
       const stretched: Vector = [d[0] / stretch[0], d[1] / stretch[1], d[2] / stretch[2]];
       const length = Math.hypot(...stretched);
       const unit: Vector = [stretched[0] / length, stretched[1] / length, stretched[2] / length];
-      const k =
-        frame.periodic === 3
-          ? snapInside(frame, unit, edges[s]! * length, edges[s + 1]! * length, radius)
-          : snapKeepingLength(frame, unit, waves[s]! * length);
+      let k: Vector;
+      if (frame.periodic < 3) k = snapKeepingLength(frame, unit, waves[s]! * length);
+      else {
+        // A wave vector met twice in a shell would interfere with itself: another is sought as long as there may be one.
+        for (let attempt = 0; ; attempt++) {
+          k = snapInside(frame, unit, edges[s]! * length, edges[s + 1]! * length, radius, attempt);
+          const key = latticeKey(k);
+          if (attempt < 60 && met.has(key)) continue;
+          met.add(key);
+          break;
+        }
+      }
       const unstretched: Vector = [a[0] * stretch[0], a[1] * stretch[1], a[2] * stretch[2]];
       const size = Math.hypot(...unstretched);
       const p = perpendicular(k, [unstretched[0] / size, unstretched[1] / size, unstretched[2] / size]);
@@ -152,6 +161,7 @@ export function createModes(options: ModeOptions): ModeSet {
     for (let attempt = 0; ; attempt++) {
       shortest[s] = Infinity;
       longest[s] = 0;
+      met.clear();
       for (let t = 0; t < triads; t++) {
         const e = randomFrame(turn);
         for (let c = 0; c < 3; c++) place(first + 3 * t + c, e[c]!, e[(c + 1) % 3]!);
@@ -181,6 +191,12 @@ export function createModes(options: ModeOptions): ModeSet {
     longest,
     anisotropicShells,
   };
+}
+
+/** The same for K and -K. */
+function latticeKey(k: Vector): string {
+  const first = k.find((c) => Math.abs(c) > 1e-9 * Math.hypot(...k)) ?? 0;
+  return k.map((c) => (first < 0 ? -c : c).toFixed(6).replace('-0.000000', '0.000000')).join();
 }
 
 /** Weights within a shell that make its second moment isotropic; false when they would have to be too uneven. */
