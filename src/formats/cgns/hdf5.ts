@@ -45,12 +45,14 @@ export function damaged(path: string, place: string, error: unknown): Error {
   if (error instanceof RangeError && /array length|allocation/i.test(error.message)) {
     return new MachineError({ file: path, place, cause: 'there is not enough memory to read it' });
   }
-  return new InputError({
+  const result = new InputError({
     file: path,
     place,
     cause: 'the HDF5 data cannot be read, the file is cut off or damaged',
     remedy: 'copy or export it again',
   });
+  result.cause = error;
+  return result;
 }
 
 /** @throws MachineError when the file cannot be read, InputError when it is not HDF5 */
