@@ -268,6 +268,31 @@ function verdictOf(data: FollowupReportData): NonNullable<ReportPage['verdict']>
   };
 }
 
+/** Spectra of the same probe in all histories, one chart a probe. */
+function overlaidSpectra(readings: readonly HistoryFigures[]): ChartBlock[] {
+  const [first] = readings;
+  if (first === undefined) return [];
+  return first.probes.slice(0, 4).flatMap((probe) => {
+    const same = readings.map((r) => r.probes.find((p) => p.name === probe.name));
+    if (same.some((p) => p === undefined)) return [];
+    return [
+      spectrumChart({
+        title: `Spectra at ${probe.name} in all histories`,
+        caption: 'Fluctuation along the mean flow (Welch 1967).',
+        x: { label: 'frequency', unit: 'Hz' },
+        y: { label: 'power spectral density', unit: 'm2/s' },
+        curves: (same as ProbeFigures[]).map((p, i) => ({
+          name: (readings[i] as HistoryFigures).file,
+          x: p.streamwise.spectrum.frequency.subarray(1),
+          y: p.streamwise.spectrum.density.subarray(1),
+        })),
+        cutoffs:
+          probe.cutoffFrequency === undefined ? [] : [{ value: probe.cutoffFrequency, label: 'cut-off of the grid' }],
+      }),
+    ];
+  });
+}
+
 /** Page of `followup`. */
 export function followupReport(data: FollowupReportData): ReportPage {
   const alone = data.readings.length === 1;
@@ -321,6 +346,7 @@ export function followupReport(data: FollowupReportData): ReportPage {
           ]),
           note: 'Differences of means from the first history; above two standard errors they are hardly chance.',
         },
+        ...overlaidSpectra(data.readings),
       ],
     });
   }

@@ -89,7 +89,8 @@ describe('followup command', () => {
     expect(html).toContain('eddygraft 1.2.3');
     expect(html.length).toBeLessThan(500_000);
     await expect(run(first, '--report', report)).rejects.toThrow('exists already');
-    await run(first, '--report', report, '--overwrite');
+    await run(first, second, '--report', report, '--overwrite');
+    expect(readFileSync(report, 'utf8')).toContain('Spectra at wake01 in all histories');
   });
 
   it('refuses what it cannot use', async () => {
