@@ -6,7 +6,7 @@ import { pathToFileURL } from 'node:url';
 import { type Browser, chromium, type Page } from 'playwright-core';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import { renderReport } from '../../src/report/render.js';
-import { hostile, sampleAppraisal, sampleRun } from './sample.js';
+import { hostile, sampleAppraisal, sampleAudit, sampleFollowup, sampleRun } from './sample.js';
 
 const chromiumPath = '/usr/bin/chromium';
 const there = existsSync(chromiumPath);
@@ -63,6 +63,8 @@ describe.skipIf(!there)('report page in a browser', () => {
     for (const [name, html, charts, pictures] of [
       ['run', runHtml, 4, 4],
       ['appraisal', appraisalHtml, 3, 3],
+      ['audit', renderReport(sampleAudit()), 4, 2],
+      ['followup', renderReport(sampleFollowup()), 11, 0],
     ] as const) {
       faults.length = 0;
       const page = await open(name, html);

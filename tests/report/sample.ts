@@ -1,15 +1,20 @@
+import { compareHistories, followUp } from '../../src/appraisal/followup.js';
 import { weightedHistogram } from '../../src/appraisal/histogram.js';
+import { readHistory } from '../../src/appraisal/history.js';
 import { planMonitors } from '../../src/appraisal/monitors.js';
 import { worstRegions } from '../../src/appraisal/regions.js';
 import { appraiseResolution, summariseResolution } from '../../src/appraisal/resolution.js';
 import { courantRates, planRun } from '../../src/appraisal/run-plan.js';
 import { appraisalReport } from '../../src/report/appraisal-report.js';
 import type { RunReportData } from '../../src/report/audit-data.js';
+import { auditReport } from '../../src/report/audit-report.js';
 import { gridRatioPicture, pointsOnSlice, sharePicture, slicePicture } from '../../src/report/figures.js';
+import { followupReport } from '../../src/report/followup-report.js';
 import type { PictureBlock, ReportPage } from '../../src/report/page.js';
 import { runReport } from '../../src/report/run-report.js';
 import { sampleSlice, sliceMesh, sliceOutline } from '../../src/report/slices.js';
 import { brickMesh } from '../appraisal/brick.js';
+import { ornsteinUhlenbeck } from '../appraisal/signals.js';
 
 /** An invented duct with a wake behind x = 0.6 m; planes are denser in the wake. */
 export function ductCase(nx: number, ny: number, nz: number) {
@@ -250,4 +255,47 @@ export function sampleRunData(
 
 export function sampleRun(title?: string, field?: string): ReportPage {
   return runReport(sampleRunData(title, field));
+}
+
+/** Page of an audit of the duct. */
+export function sampleAudit(): ReportPage {
+  const {
+    checks: _checks,
+    steps: _steps,
+    files: _files,
+    before: _before,
+    plan: _plan,
+    seconds: _seconds,
+    ...audit
+  } = sampleRunData('Audit of a start, invented');
+  return auditReport(audit);
+}
+
+/** Page of a follow-up of two invented histories. */
+export function sampleFollowup(): ReportPage {
+  const n = 2048;
+  const time = Float64Array.from({ length: n }, (_, i) => i * 1e-3);
+  const readings = ['one.csv', 'two.csv'].map((file) => {
+    const drag = ornsteinUhlenbeck(n, 1e-3, 0.02, 0.05, file).map((x, i) => 1.2 + x + Math.exp(-i / 120));
+    const u = ['x', 'y', 'z'].map((c) => ornsteinUhlenbeck(n, 1e-3, 0.01, 1, file + c));
+    const rows = Array.from(time, (t, i) => [t, drag[i], 10 + u[0]![i]!, u[1]![i], u[2]![i]].join(','));
+    const history = readHistory(`Time,Drag,p.VelocityX,p.VelocityY,p.VelocityZ\n${rows.join('\n')}`, file);
+    return { history, reading: followUp(history, { cellWidth: 0.02 }) };
+  });
+  return followupReport({
+    title: 'Follow-up of two histories, invented',
+    readings: readings.map((r) => r.reading),
+    traces: readings.map((r) => ({
+      file: r.history.file,
+      name: 'Drag',
+      time,
+      values: r.history.signals.get('Drag')!,
+      transientEnd: 0.3,
+    })),
+    comparison: compareHistories(readings.map((r) => r.reading)),
+    meanError: 0.01,
+    varianceError: 0.05,
+    assumptions: ['Cell width 20 mm at the probe.'],
+    footer: ['eddygraft 0.1.0'],
+  });
 }
