@@ -29,7 +29,7 @@ export async function listCgnsSnapshots(path: string): Promise<CgnsSnapshot[]> {
 }
 
 /**
- * Values at the faces of unstructured zones (FlowSolution_t at FaceCenter).
+ * Values at the faces of unstructured zones (FlowSolution_t or ZoneSubRegion_t at FaceCenter).
  *
  * @throws InputError for damaged files and for faces that do not exist
  */

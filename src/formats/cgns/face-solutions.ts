@@ -52,7 +52,7 @@ function faceNumbers(session: CgnsSession, zone: ZoneInfo, solution: CgnsNode): 
 }
 
 /**
- * Reads the solutions at FaceCenter of unstructured zones.
+ * Reads the values at FaceCenter of unstructured zones, from FlowSolution_t and ZoneSubRegion_t.
  *
  * @throws InputError for damaged files and for faces that do not exist
  */
@@ -61,7 +61,8 @@ export async function readCgnsFaceArrays(path: string): Promise<CgnsFaceArray[]>
     const result: CgnsFaceArray[] = [];
     for (const zone of listZones(session, readTree(session, path)).zones) {
       if (zone.structured) continue;
-      for (const solution of childrenOf(zone.node, 'FlowSolution_t')) {
+      const places = [...childrenOf(zone.node, 'FlowSolution_t'), ...childrenOf(zone.node, 'ZoneSubRegion_t')];
+      for (const solution of places) {
         if (locationOf(session, solution) !== 'FaceCenter') continue;
         const sections = readSections(session, zone.node, zone.points, zone.cells);
         const lookup = faceLookup(session, sections, 2, zone.points);

@@ -74,7 +74,7 @@ function matchFaces(sections: readonly FaceSection[], dataset: Dataset, mesh: Ce
 }
 
 /**
- * Adds values on faces as FlowSolution_t nodes at FaceCenter, one for each section of polygons.
+ * Adds values on faces as ZoneSubRegion_t nodes at FaceCenter, one for each section of polygons.
  *
  * @throws InputError when a polygon of the file is no face of the mesh
  */
@@ -94,7 +94,9 @@ export function writeFaceFields(
     inZone.set(zone, used);
     const name = shortName(freeName(FACES), used);
     used.add(name);
-    const path = createNode(file, zone, name, 'FlowSolution_t');
+    // A FlowSolution_t at FaceCenter of an unstructured zone cannot be opened by the standard's library 3.4, even where
+    // it wrote it; ZoneSubRegion_t is the standard's node for values on some faces and is read by it.
+    const path = createNode(file, zone, name, 'ZoneSubRegion_t', wholeData('I4', [1], [2]));
     createNode(file, path, 'GridLocation', 'GridLocation_t', textData('FaceCenter'));
     createNode(file, path, 'PointRange', 'IndexRange_t', wholeData('I4', [1, 2], [section.first, section.last]));
     writeSiUnits(file, path);
