@@ -1,6 +1,6 @@
 import type { CellTopology, DataArray, GridStructure, NumberArray } from '../../basis/dataset.js';
 import { InputError } from '../../basis/errors.js';
-import { createNumbers } from './numbers.js';
+import { allocate, createNumbers, numberTypeOf } from './numbers.js';
 
 /** One piece of a file: its own points, cells and arrays, numbered from 0. */
 export interface Piece {
@@ -15,23 +15,21 @@ export interface Piece {
   readonly structure?: GridStructure;
 }
 
-/** Puts arrays of the same name one after the other; arrays that a piece lacks are left out and named. */
-export function joinArrays(
+/** Arrays that every piece has, each as the list of its parts; arrays that a piece lacks are left out and named. */
+export function sharedArrays(
   lists: readonly (readonly DataArray[])[],
   file: string,
   remarks: string[],
-): readonly DataArray[] {
-  const [first = []] = lists;
-  if (lists.length === 1) return first;
-  const joined: DataArray[] = [];
-  for (const model of first) {
-    const parts = lists.map((list) => list.find((entry) => entry.name === model.name));
-    if (parts.some((part) => part === undefined)) {
+): (readonly DataArray[])[] {
+  const models = new Map(lists.flat().map((array) => [array.name, array]));
+  const shared: DataArray[][] = [];
+  for (const model of models.values()) {
+    const parts = lists.flatMap((list) => list.find((entry) => entry.name === model.name) ?? []);
+    if (parts.length < lists.length) {
       remarks.push(`array ${model.name} is not in every piece and was left out`);
       continue;
     }
-    const known = parts as DataArray[];
-    const different = known.find((part) => part.components !== model.components || part.type !== model.type);
+    const different = parts.find((part) => part.components !== model.components || part.type !== model.type);
     if (different !== undefined) {
       throw new InputError({
         file,
@@ -40,20 +38,33 @@ export function joinArrays(
         remedy: 'write all pieces alike',
       });
     }
-    const tuples = known.reduce((sum, part) => sum + part.tuples, 0);
+    shared.push(parts);
+  }
+  return shared;
+}
+
+/** Puts arrays of the same name one after the other. */
+export function joinArrays(
+  lists: readonly (readonly DataArray[])[],
+  file: string,
+  remarks: string[],
+): readonly DataArray[] {
+  if (lists.length === 1) return lists[0] as readonly DataArray[];
+  return sharedArrays(lists, file, remarks).map((parts) => {
+    const { name, components, type } = parts[0] as DataArray;
+    const tuples = parts.reduce((sum, part) => sum + part.tuples, 0);
     const load = (): NumberArray => {
-      const values = createNumbers(model.type, tuples * model.components);
+      const values = allocate(file, `array ${name}`, () => createNumbers(type, tuples * components));
       let at = 0;
-      for (const part of known) {
+      for (const part of parts) {
         const source = part.load();
         (values as Float64Array).set(source as Float64Array, at);
         at += source.length;
       }
       return values;
     };
-    joined.push({ name: model.name, components: model.components, tuples, type: model.type, load });
-  }
-  return joined;
+    return { name, components, tuples, type, load };
+  });
 }
 
 /** Cells of several pieces one after the other, points renumbered. */
@@ -85,7 +96,9 @@ export function joinCells(
     for (let i = 0; i < count; i += 1) {
       polyhedronOffsets[cell + i + 1] = faceAt + (faceOffsets?.[i + 1] ?? 0);
     }
-    if (faces !== undefined) copyFaces(faces, faceOffsets as Int32Array, polyhedronFaces, faceAt, pointBegin);
+    if (faces !== undefined) {
+      copyFaces(faces, faceOffsets as Int32Array, polyhedronFaces, faceAt, (point) => point + pointBegin);
+    }
     faceAt += faces?.length ?? 0;
     at += cells.connectivity.length;
     cell += count;
@@ -95,7 +108,14 @@ export function joinCells(
     : { types, offsets, connectivity, polyhedronFaces, polyhedronOffsets };
 }
 
-function copyFaces(from: Int32Array, offsets: Int32Array, to: Int32Array, base: number, shift: number): void {
+/** Copies face streams to `to` from `base` on with other point numbers. */
+function copyFaces(
+  from: Int32Array,
+  offsets: Int32Array,
+  to: Int32Array,
+  base: number,
+  numberOf: (point: number) => number,
+): void {
   to.set(from, base);
   for (let cell = 0; cell + 1 < offsets.length; cell += 1) {
     const end = offsets[cell + 1] as number;
@@ -103,24 +123,24 @@ function copyFaces(from: Int32Array, offsets: Int32Array, to: Int32Array, base: 
     let at = (offsets[cell] as number) + 1;
     while (at < end) {
       const count = from[at] as number;
-      for (let i = at + 1; i <= at + count; i += 1) to[base + i] = (from[i] as number) + shift;
+      for (let i = at + 1; i <= at + count; i += 1) to[base + i] = numberOf(from[i] as number);
       at += count + 1;
     }
   }
 }
 
+function keptTuples(values: NumberArray, kept: Int32Array, components: number): NumberArray {
+  const source = values as Float64Array;
+  const out = createNumbers(numberTypeOf(values), kept.length * components) as Float64Array;
+  for (let i = 0; i < kept.length; i += 1) {
+    const from = (kept[i] as number) * components;
+    for (let c = 0; c < components; c += 1) out[i * components + c] = source[from + c] as number;
+  }
+  return out;
+}
+
 function keepTuples(array: DataArray, kept: Int32Array): DataArray {
-  const load = (): NumberArray => {
-    const source = array.load() as Float64Array;
-    const values = createNumbers(array.type, kept.length * array.components) as Float64Array;
-    for (let i = 0; i < kept.length; i += 1) {
-      for (let c = 0; c < array.components; c += 1) {
-        values[i * array.components + c] = source[(kept[i] as number) * array.components + c] as number;
-      }
-    }
-    return values;
-  };
-  return { ...array, tuples: kept.length, load };
+  return { ...array, tuples: kept.length, load: () => keptTuples(array.load(), kept, array.components) };
 }
 
 function keepCells(cells: CellTopology, kept: Int32Array): CellTopology {
@@ -148,23 +168,72 @@ function keepCells(cells: CellTopology, kept: Int32Array): CellTopology {
 const duplicateCell = 1;
 const hiddenCell = 32;
 
+/** The cell array that marks ghosts, in its newer or older form. */
+export function ghostArray(piece: Piece): DataArray | undefined {
+  return piece.cellArrays.find((entry) => entry.name === 'vtkGhostType' || entry.name === 'vtkGhostLevels');
+}
+
+/** 1 for cells that belong to another piece or are hidden, 0 for all others. */
+export function duplicateOrHidden(ghosts: DataArray): Uint8Array {
+  const mask = ghosts.name === 'vtkGhostType' ? duplicateCell | hiddenCell : 255;
+  return Uint8Array.from(ghosts.load() as Uint8Array, (flags) => ((Number(flags) & mask) === 0 ? 0 : 1));
+}
+
+function indicesOf(count: number, isKept: (index: number) => boolean): Int32Array {
+  let kept = 0;
+  for (let i = 0; i < count; i += 1) if (isKept(i)) kept += 1;
+  const list = new Int32Array(kept);
+  kept = 0;
+  for (let i = 0; i < count; i += 1) {
+    if (isKept(i)) {
+      list[kept] = i;
+      kept += 1;
+    }
+  }
+  return list;
+}
+
+/** Points that remain: all but those that only dropped cells use. */
+function keptPoints(pointCount: number, before: CellTopology, after: CellTopology): Int32Array {
+  const dropped = new Uint8Array(pointCount);
+  for (const point of before.connectivity) dropped[point] = 1;
+  for (const point of after.connectivity) dropped[point] = 0;
+  return indicesOf(pointCount, (point) => dropped[point] === 0);
+}
+
+function renumbered(cells: CellTopology, kept: Int32Array, pointCount: number): CellTopology {
+  const numbers = new Int32Array(pointCount);
+  for (let i = 0; i < kept.length; i += 1) numbers[kept[i] as number] = i;
+  const connectivity = cells.connectivity.map((point) => numbers[point] as number);
+  const { polyhedronFaces, polyhedronOffsets } = cells;
+  if (polyhedronFaces === undefined || polyhedronOffsets === undefined) return { ...cells, connectivity };
+  const faces = new Int32Array(polyhedronFaces.length);
+  copyFaces(polyhedronFaces, polyhedronOffsets, faces, 0, (point) => numbers[point] as number);
+  return { ...cells, connectivity, polyhedronFaces: faces };
+}
+
 /** Drops ghost and hidden cells, so that no cell is counted twice where pieces overlap. */
 export function dropGhosts(piece: Piece, remarks: string[]): Piece {
-  const ghosts = piece.cellArrays.find((entry) => entry.name === 'vtkGhostType' || entry.name === 'vtkGhostLevels');
+  const ghosts = ghostArray(piece);
   if (ghosts === undefined) return piece;
-  const flags = ghosts.load() as Uint8Array;
-  const mask = ghosts.name === 'vtkGhostType' ? duplicateCell | hiddenCell : 255;
-  const kept: number[] = [];
-  for (let i = 0; i < flags.length; i += 1) if ((Number(flags[i]) & mask) === 0) kept.push(i);
-  const cellArrays = piece.cellArrays.filter((entry) => entry !== ghosts);
-  if (kept.length === flags.length) return { ...piece, cellArrays };
-  remarks.push(`${flags.length - kept.length} ghost cells of ${piece.name} were left out`);
-  const list = Int32Array.from(kept);
+  const isGhost = duplicateOrHidden(ghosts);
+  const list = indicesOf(piece.cellCount, (cell) => isGhost[cell] === 0);
+  if (list.length === piece.cellCount) return piece;
+  remarks.push(`${piece.cellCount - list.length} ghost cells of ${piece.name} were left out`);
+  const before = piece.cells();
+  const after = keepCells(before, list);
+  const points = keptPoints(piece.pointCount, before, after);
   const { structure: _, ...rest } = piece;
+  const own = (arrays: readonly DataArray[]): DataArray[] =>
+    arrays.filter((entry) => entry.name !== 'vtkGhostType' && entry.name !== 'vtkGhostLevels');
+  const cells = renumbered(after, points, piece.pointCount);
   return {
     ...rest,
+    pointCount: points.length,
     cellCount: list.length,
-    cells: () => keepCells(piece.cells(), list),
-    cellArrays: cellArrays.map((entry) => keepTuples(entry, list)),
+    points: () => keptTuples(piece.points(), points, 3) as Float64Array,
+    cells: () => cells,
+    pointArrays: own(piece.pointArrays).map((entry) => keepTuples(entry, points)),
+    cellArrays: own(piece.cellArrays).map((entry) => keepTuples(entry, list)),
   };
 }

@@ -1,92 +1,114 @@
 import { existsSync } from 'node:fs';
-import { dirname, resolve } from 'node:path';
-import type { Dataset, ZoneRange } from '../../basis/dataset.js';
+import { dirname, isAbsolute, join, resolve } from 'node:path';
+import type { Dataset } from '../../basis/dataset.js';
 import { InputError } from '../../basis/errors.js';
 import { openFile } from '../file-reader.js';
-import { type FileContext, openContext, readArray } from './arrays.js';
+import { type FileContext, openContext } from './arrays.js';
+import { assemble } from './assemble.js';
+import { readFieldData } from './field-data.js';
 import { childNamed, childrenNamed, type Element, type Head, readHead } from './head.js';
-import { dropGhosts, joinArrays, joinCells, type Piece } from './pieces.js';
+import { dropGhosts, type Piece } from './pieces.js';
 import { structuredPiece } from './structured.js';
+import { joinStructured } from './structured-pieces.js';
 import { surfacePiece, unstructuredPiece } from './unstructured.js';
 
 interface FileContent {
-  readonly pieces: Piece[];
-  readonly notes: Map<string, string>;
-  readonly remarks: string[];
+  readonly pieces: readonly Piece[];
+  readonly notes: ReadonlyMap<string, string>;
+  readonly remarks: readonly string[];
   readonly time?: number;
+  /** The pieces are those of one grid as the file has them: they may overlap in ghost cells. */
+  readonly isOneGrid: boolean;
 }
 
-const deepest = 16;
-
-function textOf(codes: ArrayLike<number | bigint>): string {
-  const bytes: number[] = [];
-  for (let i = 0; i < codes.length; i += 1) {
-    const code = Number(codes[i]);
-    if (code === 0) break;
-    bytes.push(code);
-  }
-  return Buffer.from(bytes).toString('utf8');
-}
-
-/** Field data: strings are kept as notes, `TimeValue` is the physical time. */
-async function readFieldData(grid: Element, context: FileContext, content: FileContent): Promise<number | undefined> {
-  let time: number | undefined;
-  for (const element of childrenNamed(childNamed(grid, 'FieldData'), 'DataArray')) {
-    const name = element.attributes.Name ?? '';
-    const isText = element.attributes.type === 'String';
-    if (!isText && name !== 'TimeValue') continue;
-    // Strings are stored as the codes of their characters with a zero behind each.
-    const plain = isText ? { ...element, attributes: { ...element.attributes, type: 'UInt8' } } : element;
-    const array = await readArray(plain, context, { place: 'FieldData' });
-    if (isText) content.notes.set(name, textOf(array.load() as Uint8Array));
-    else time = Number(array.load()[0]);
-  }
-  return time;
+/** A file that another refers to, with the name its pieces shall have. */
+interface Part {
+  readonly name: string;
+  readonly source: string | undefined;
 }
 
 function partPath(file: string, source: string | undefined): string {
   if (source === undefined || source === '') {
     throw new InputError({ file, cause: 'a part has no file name' });
   }
-  const path = resolve(dirname(file), source);
+  const path = isAbsolute(source) ? source : join(dirname(file), source);
   if (!existsSync(path)) {
     throw new InputError({ file, place: source, cause: 'the part does not exist', remedy: 'copy all parts beside it' });
   }
   return path;
 }
 
-async function readParts(file: string, sources: readonly (string | undefined)[], depth: number): Promise<FileContent> {
-  const all: FileContent = { pieces: [], notes: new Map(), remarks: [] };
-  let time: number | undefined;
-  for (const source of sources) {
-    const part = await readContent(partPath(file, source), depth + 1);
-    all.pieces.push(...part.pieces);
-    all.remarks.push(...part.remarks);
-    for (const [name, text] of part.notes) all.notes.set(name, text);
-    time ??= part.time;
-  }
-  return time === undefined ? all : { ...all, time };
+function renamed(pieces: readonly Piece[], name: string): Piece[] {
+  return pieces.map((piece) => ({ ...piece, name: pieces.length === 1 ? name : `${name}, ${piece.name}` }));
 }
 
-function leaves(element: Element): Element[] {
-  return element.children.flatMap((child) => {
-    if (child.name === 'DataSet') return child.attributes.file === undefined ? [] : [child];
-    return child.name === 'Block' || child.name === 'Piece' || child.name === 'Partitions' ? leaves(child) : [];
+async function readParts(
+  file: string,
+  parts: readonly Part[],
+  readPart: (path: string) => Promise<FileContent>,
+  isOneGrid: boolean,
+): Promise<FileContent> {
+  const pieces: Piece[] = [];
+  const notes = new Map<string, string>();
+  const remarks: string[] = [];
+  let time: number | undefined;
+  for (const { name, source } of parts) {
+    const content = await readPart(partPath(file, source));
+    pieces.push(...renamed(content.pieces, name));
+    remarks.push(...content.remarks.map((remark) => `${name}: ${remark}`));
+    for (const [key, text] of content.notes) notes.set(key, text);
+    time ??= content.time;
+  }
+  return { pieces, notes, remarks, isOneGrid, ...(time === undefined ? {} : { time }) };
+}
+
+/** Data sets of nested blocks in order, each named by its blocks. */
+function leaves(element: Element, above: string): Part[] {
+  return element.children.flatMap((child, index) => {
+    const own = child.attributes.name ?? `block ${child.attributes.index ?? index}`;
+    const name = above === '' ? own : `${above}/${own}`;
+    if (child.name === 'DataSet') {
+      return child.attributes.file === undefined ? [] : [{ name, source: child.attributes.file }];
+    }
+    return child.name === 'Block' || child.name === 'Piece' || child.name === 'Partitions' ? leaves(child, name) : [];
   });
 }
 
-async function readGrid(grid: Element, context: FileContext, content: FileContent): Promise<void> {
-  const pieces = childrenNamed(grid, 'Piece');
-  for (let i = 0; i < pieces.length; i += 1) {
-    const element = pieces[i] as Element;
-    const name = `piece ${i}`;
+/** True for the pieces without points that parallel writers leave behind. */
+function isEmptyPiece(element: Element): boolean {
+  const extent = element.attributes.Extent?.trim().split(/\s+/).map(Number);
+  if (extent?.length !== 6) return false;
+  return [0, 2, 4].some((side) => (extent[side + 1] as number) < (extent[side] as number));
+}
+
+async function readGrid(grid: Element, context: FileContext): Promise<FileContent> {
+  const { notes, time, ...field } = await readFieldData(grid, context);
+  const remarks = [...field.remarks];
+  const isStructured = grid.name !== 'UnstructuredGrid' && grid.name !== 'PolyData';
+  const all: Piece[] = [];
+  let number = 0;
+  for (const element of childrenNamed(grid, 'Piece')) {
+    const name = `piece ${number++}`;
+    if (isStructured && isEmptyPiece(element)) continue;
     let piece: Piece;
     if (grid.name === 'UnstructuredGrid') piece = await unstructuredPiece(element, context, name);
     else if (grid.name === 'PolyData') piece = await surfacePiece(element, context, name);
     else piece = await structuredPiece(grid, element, context, name);
-    const kept = dropGhosts(piece, content.remarks);
-    if (kept.pointCount > 0) content.pieces.push(kept);
+    if (piece.pointCount > 0) all.push(piece);
   }
+  return { pieces: all, notes, remarks, isOneGrid: true, ...(time === undefined ? {} : { time }) };
+}
+
+/** A file by itself: structured pieces put together where they tile a grid, ghost cells dropped. */
+async function readWhole(file: string, trail: readonly string[]): Promise<FileContent> {
+  const content = await readContent(file, trail);
+  if (!content.isOneGrid) return content;
+  const remarks = [...content.remarks];
+  const { pieces } = content;
+  const joined = pieces.length > 1 ? joinStructured(pieces, file, remarks) : undefined;
+  if (joined !== undefined) return { ...content, pieces: [joined], remarks, isOneGrid: false };
+  const kept = pieces.map((piece) => dropGhosts(piece, remarks)).filter((piece) => piece.pointCount > 0);
+  return { ...content, pieces: kept, remarks, isOneGrid: false };
 }
 
 function firstOfType(head: Head, file: string): { readonly type: string; readonly element: Element } {
@@ -99,48 +121,42 @@ function firstOfType(head: Head, file: string): { readonly type: string; readonl
   return { type, element };
 }
 
-async function readContent(file: string, depth: number): Promise<FileContent> {
-  if (depth > deepest) throw new InputError({ file, cause: 'files refer to each other in a circle' });
+async function readContent(file: string, trail: readonly string[]): Promise<FileContent> {
+  const path = resolve(file);
+  if (trail.includes(path)) {
+    throw new InputError({ file, cause: 'the file refers to itself, directly or by way of others' });
+  }
   const reader = openFile(file);
   try {
     const head = readHead(reader);
     const { type, element } = firstOfType(head, file);
+    const below = [...trail, path];
     switch (type) {
       case 'UnstructuredGrid':
       case 'PolyData':
       case 'ImageData':
       case 'RectilinearGrid':
-      case 'StructuredGrid': {
-        const content: FileContent = { pieces: [], notes: new Map(), remarks: [] };
-        const context = openContext(reader, head);
-        const time = await readFieldData(element, context, content);
-        await readGrid(element, context, content);
-        return time === undefined ? content : { ...content, time };
-      }
+      case 'StructuredGrid':
+        return await readGrid(element, openContext(reader, head));
       case 'PUnstructuredGrid':
       case 'PPolyData':
       case 'PImageData':
       case 'PRectilinearGrid':
-      case 'PStructuredGrid':
-        return await readParts(
-          file,
-          childrenNamed(element, 'Piece').map((piece) => piece.attributes.Source),
-          depth,
-        );
+      case 'PStructuredGrid': {
+        const parts = childrenNamed(element, 'Piece')
+          .filter((piece) => !isEmptyPiece(piece))
+          .map((piece, index) => ({ name: `piece ${index}`, source: piece.attributes.Source }));
+        // Parts keep their ghost cells until all are there.
+        return await readParts(file, parts, (part) => readContent(part, below), true);
+      }
       case 'vtkMultiBlockDataSet':
       case 'vtkPartitionedDataSet':
-      case 'vtkPartitionedDataSetCollection': {
-        const sets = leaves(element);
-        const content = await readParts(
-          file,
-          sets.map((set) => set.attributes.file),
-          depth,
-        );
-        return content;
-      }
+      case 'vtkPartitionedDataSetCollection':
+        return await readParts(file, leaves(element, ''), (part) => readWhole(part, below), false);
       case 'Collection': {
-        const last = readSeriesEntries(element, file).at(-1);
-        return await readParts(file, last?.files ?? [], depth);
+        const entry = readSeriesEntries(element, file).at(-1) as SeriesEntry;
+        const parts = entry.files.map((source, index) => ({ name: `part ${index}`, source }));
+        return { ...(await readParts(file, parts, (part) => readWhole(part, below), false)), time: entry.time };
       }
       default:
         throw new InputError({ file, cause: `VTK data sets of type ${type} are not read`, remedy: 'give a mesh file' });
@@ -170,7 +186,7 @@ function readSeriesEntries(collection: Element, file: string): SeriesEntry[] {
 }
 
 /**
- * The times of a .pvd collection and their files, in order of time; paths made absolute.
+ * The times of a .pvd collection and their files, in order of time; paths start where `file` starts.
  *
  * @throws InputError when the file is no collection
  */
@@ -190,74 +206,6 @@ export function readSeries(file: string): SeriesEntry[] {
 
 /** Reads any VTK XML data set as one merged set of points and cells; pieces and blocks become zones. */
 export async function readVtkXml(file: string, format: string): Promise<Dataset> {
-  const content = await readContent(resolve(file), 0);
-  const { pieces, notes, remarks, time } = content;
-  if (pieces.length === 0) {
-    throw new InputError({ file, cause: 'the file holds no points', remedy: 'write the data set with its mesh' });
-  }
-  const zones: ZoneRange[] = [];
-  let pointBegin = 0;
-  let cellBegin = 0;
-  pieces.forEach((piece, index) => {
-    zones.push({
-      name: pieces.length === 1 ? 'mesh' : `part ${index}`,
-      pointBegin,
-      pointEnd: pointBegin + piece.pointCount,
-      cellBegin,
-      cellEnd: cellBegin + piece.cellCount,
-      ...(piece.structure === undefined ? {} : { structure: piece.structure }),
-    });
-    pointBegin += piece.pointCount;
-    cellBegin += piece.cellCount;
-  });
-  const points = new Float64Array(3 * pointBegin);
-  const [only] = pieces;
-  const all = pieces.length === 1 && only !== undefined ? only.points() : points;
-  if (pieces.length > 1) {
-    pieces.forEach((piece, index) => {
-      points.set(piece.points(), 3 * (zones[index] as ZoneRange).pointBegin);
-    });
-  }
-  checkFinite(all, file);
-  const cells = joinCells(
-    pieces.map((piece, index) => ({ cells: piece.cells(), pointBegin: (zones[index] as ZoneRange).pointBegin })),
-  );
-  const pointArrays = joinArrays(
-    pieces.map((piece) => piece.pointArrays),
-    file,
-    remarks,
-  );
-  const cellArrays = joinArrays(
-    pieces.map((piece) => piece.cellArrays),
-    file,
-    remarks,
-  );
-  return {
-    file,
-    format,
-    points: all,
-    pointType: pieces.every((piece) => piece.pointType === 'Float32') ? 'Float32' : 'Float64',
-    ...(cells.types.length === 0 ? {} : { cells }),
-    pointArrays,
-    cellArrays,
-    zones,
-    boundaries: [],
-    missingAxes: [],
-    notes,
-    remarks,
-    ...(time === undefined ? {} : { time }),
-  };
-}
-
-function checkFinite(points: Float64Array, file: string): void {
-  for (let i = 0; i < points.length; i += 1) {
-    const value = points[i] as number;
-    if (value - value !== 0) {
-      throw new InputError({
-        file,
-        place: `point ${Math.floor(i / 3)} (counted from 0)`,
-        cause: 'a coordinate is not a finite number',
-      });
-    }
-  }
+  const { pieces, ...rest } = await readWhole(file, []);
+  return assemble(pieces, { file, format, ...rest });
 }

@@ -71,12 +71,8 @@ export function structuredCells(extent: Extent): CellTopology {
   return { types, offsets, connectivity };
 }
 
-function imagePoints(
-  extent: Extent,
-  origin: readonly number[],
-  spacing: readonly number[],
-  direction: readonly number[],
-): Float64Array {
+export function imagePoints(structure: GridStructure): Float64Array {
+  const { extent, origin = [0, 0, 0], spacing = [1, 1, 1], direction = [1, 0, 0, 0, 1, 0, 0, 0, 1] } = structure;
   const [ni, nj, nk] = sizesOf(extent);
   const points = new Float64Array(3 * ni * nj * nk);
   let at = 0;
@@ -152,17 +148,18 @@ export async function structuredPiece(
   if (grid.name.endsWith('ImageData')) {
     const origin = numbers(grid.attributes.Origin ?? '0 0 0', 3, file, 'Origin');
     const spacing = numbers(grid.attributes.Spacing ?? '1 1 1', 3, file, 'Spacing');
-    const direction = numbers(grid.attributes.Direction ?? '1 0 0 0 1 0 0 0 1', 9, file, 'Direction');
     const structure: GridStructure = {
       kind: 'image',
       extent,
       origin: origin as [number, number, number],
       spacing: spacing as [number, number, number],
-      ...(grid.attributes.Direction === undefined ? {} : { direction }),
+      ...(grid.attributes.Direction === undefined
+        ? {}
+        : { direction: numbers(grid.attributes.Direction, 9, file, 'Direction') }),
     };
     return {
       ...common,
-      points: () => imagePoints(extent, origin, spacing, direction),
+      points: () => imagePoints(structure),
       pointType: 'Float64',
       structure,
     };

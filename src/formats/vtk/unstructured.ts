@@ -1,7 +1,10 @@
 import type { CellTopology, DataArray } from '../../basis/dataset.js';
 import { InputError } from '../../basis/errors.js';
+import { toFloat64 } from '../../basis/number-arrays.js';
+import { cellShape } from '../../mesh/cell-types.js';
 import { type FileContext, readArray } from './arrays.js';
 import { childNamed, childrenNamed, type Element } from './head.js';
+import { allocate } from './numbers.js';
 import type { Piece } from './pieces.js';
 
 const mostCells = 2 ** 31 - 2;
@@ -37,15 +40,33 @@ export async function sectionArrays(
   return arrays;
 }
 
+const littleEndian = new Uint8Array(new Uint16Array([1]).buffer)[0] === 1;
+
+/**
+ * Whole numbers of any type as Int32: point numbers, offsets (-1 stands for none).
+ *
+ * @throws InputError for numbers below -1 or beyond 31 bits
+ */
 export function loadInt32(array: DataArray, file: string, place: string): Int32Array {
   const values = array.load();
   if (values instanceof Int32Array) return values;
-  const out = new Int32Array(values.length);
-  for (let i = 0; i < values.length; i += 1) {
-    const value = Number(values[i]);
-    if (value < -1 || value > mostCells || !Number.isInteger(value)) {
-      throw new InputError({ file, place: `${place} array ${array.name}`, cause: `entry ${i} is ${value}` });
+  const out = allocate(file, `${place} array ${array.name}`, () => new Int32Array(values.length));
+  const report = (entry: number): InputError =>
+    new InputError({ file, place: `${place} array ${array.name}`, cause: `entry ${entry} is ${values[entry]}` });
+  if (values instanceof BigInt64Array || values instanceof BigUint64Array) {
+    // Two words a number: a big integer object for each would take ten times as long.
+    const words = new Int32Array(values.buffer, values.byteOffset, 2 * values.length);
+    const low = littleEndian ? 0 : 1;
+    for (let i = 0; i < out.length; i += 1) {
+      const value = words[2 * i + low] as number;
+      if ((words[2 * i + 1 - low] as number) !== (value < 0 ? -1 : 0) || value < -1) throw report(i);
+      out[i] = value;
     }
+    return out;
+  }
+  for (let i = 0; i < out.length; i += 1) {
+    const value = values[i] as number;
+    if (value < -1 || value > mostCells || !Number.isInteger(value)) throw report(i);
     out[i] = value;
   }
   return out;
@@ -54,7 +75,7 @@ export function loadInt32(array: DataArray, file: string, place: string): Int32A
 export function float64Points(array: DataArray): { load: () => Float64Array; type: 'Float32' | 'Float64' } {
   const load = (): Float64Array => {
     const values = array.load();
-    return values instanceof Float64Array ? values : Float64Array.from(values as Float32Array, Number);
+    return toFloat64(values);
   };
   return { load, type: array.type === 'Float32' ? 'Float32' : 'Float64' };
 }
@@ -172,6 +193,26 @@ function checkFaceStream(faces: PolyhedronFaces, pointCount: number, report: (ca
   }
 }
 
+function typesOf(numbers: Int32Array, report: (cause: string) => InputError): Uint8Array {
+  const types = new Uint8Array(numbers.length);
+  for (let cell = 0; cell < types.length; cell += 1) {
+    const type = numbers[cell] as number;
+    if (type < 0 || type > 255) throw report(`cell ${cell} has the type ${type}, which is none`);
+    types[cell] = type;
+  }
+  return types;
+}
+
+/** Every cell must have the corners of its type. */
+function checkSizes(types: Uint8Array, offsets: Int32Array, report: (cause: string) => InputError): void {
+  const corners = Int32Array.from({ length: 256 }, (_, type) => cellShape(type)?.corners ?? 0);
+  for (let cell = 0; cell < types.length; cell += 1) {
+    const size = (offsets[cell + 1] as number) - (offsets[cell] as number);
+    const type = types[cell] as number;
+    if (size < (corners[type] as number)) throw report(`cell ${cell} of type ${type} has ${size} points`);
+  }
+}
+
 async function unstructuredCells(
   piece: Element,
   cellCount: number,
@@ -194,11 +235,12 @@ async function unstructuredCells(
     if (values === undefined) throw report(`array ${name} is missing`);
     return values;
   };
-  const types = Uint8Array.from(await need('types', cellCount));
+  const types = typesOf(await need('types', cellCount), report);
   const ends = await need('offsets', cellCount);
   const connectivity = await need('connectivity');
   const offsets = startsFromEnds(ends, cellCount, connectivity.length, report);
   checkPointNumbers(connectivity, pointCount, report);
+  checkSizes(types, offsets, report);
   if (!types.includes(polyhedron)) return { types, offsets, connectivity };
   const faces = await read('faces');
   const faceOffsets = await read('faceoffsets');
