@@ -1,3 +1,4 @@
+import { endianness } from 'node:os';
 import type { NumberArray, NumberType } from '../../basis/dataset.js';
 import { MachineError } from '../../basis/errors.js';
 
@@ -20,6 +21,9 @@ const kinds: Readonly<Record<NumberType, Kind>> = {
   Float32: { bytes: 4, make: Float32Array },
   Float64: { bytes: 8, make: Float64Array },
 };
+
+/** Byte order of this machine in the format's words. */
+export const hostByteOrder = endianness() === 'LE' ? 'LittleEndian' : 'BigEndian';
 
 export function isNumberType(name: string | undefined): name is NumberType {
   return name !== undefined && Object.hasOwn(kinds, name);

@@ -1,21 +1,19 @@
-import { closeSync, openSync, writeSync } from 'node:fs';
-import { deflateSync } from 'node:zlib';
 import type {
   CellTopology,
   DataArray,
   Dataset,
   GridStructure,
   NumberArray,
+  NumberType,
   WriteRequest,
 } from '../../basis/dataset.js';
 import { InputError } from '../../basis/errors.js';
-import { writeBeside } from '../../basis/half-written.js';
-import { bytesOf } from './numbers.js';
+import { type StoredArray, writeVtkFile } from './write-file.js';
 
-type GridKind = 'UnstructuredGrid' | 'StructuredGrid' | 'RectilinearGrid' | 'ImageData';
+export type GridKind = 'UnstructuredGrid' | 'StructuredGrid' | 'RectilinearGrid' | 'ImageData';
 
 const polyhedron = 42;
-const compressedBlock = 1 << 20;
+const vertex = 1;
 
 function escapeAttribute(text: string): string {
   return text
@@ -26,195 +24,190 @@ function escapeAttribute(text: string): string {
     .replace(/[\n\r\t]/g, (mark) => `&#${mark.charCodeAt(0)};`);
 }
 
-function bytesView(values: NumberArray): Uint8Array {
-  return new Uint8Array(values.buffer as ArrayBuffer, values.byteOffset, values.byteLength);
+type Body = (offsetOf: (array: number) => string) => string;
+
+/** Collects the arrays of a file in the order in which its XML names them. */
+function createArrayList() {
+  const arrays: StoredArray[] = [];
+  const add = (array: StoredArray, element: string, attributes: string): Body => {
+    const number = arrays.push(array) - 1;
+    return (offsetOf) => `<${element} ${attributes} format="appended" ${offsetOf(number)}/>\n`;
+  };
+  return {
+    arrays,
+    numbers({ name, components, tuples, type, load }: DataArray): Body {
+      const stored = { place: `array ${name}`, type, count: tuples * components, load };
+      const attributes = `type="${type}" Name="${escapeAttribute(name)}" NumberOfComponents="${components}"`;
+      return add(stored, 'DataArray', attributes);
+    },
+    /** Text stands as the codes of its characters with a zero behind. */
+    text(name: string, content: string): Body {
+      const codes = Uint8Array.from([...Buffer.from(content, 'utf8'), 0]);
+      const stored = { place: `note ${name}`, type: 'UInt8' as const, count: codes.length, load: () => codes };
+      return add(stored, 'Array', `type="String" Name="${escapeAttribute(name)}" NumberOfTuples="1"`);
+    },
+  };
 }
 
-/** Blocks of an array after the compressed header of the format: counts, sizes, then the blocks. */
-function compressArray(values: NumberArray): Uint8Array[] {
-  const bytes = bytesView(values);
-  const count = Math.ceil(bytes.length / compressedBlock);
-  const last = bytes.length % compressedBlock;
-  const header = new BigUint64Array(3 + count);
-  header[0] = BigInt(count);
-  header[1] = BigInt(compressedBlock);
-  header[2] = BigInt(last);
-  const blocks: Uint8Array[] = [];
-  for (let i = 0; i < count; i += 1) {
-    const block = deflateSync(bytes.subarray(i * compressedBlock, (i + 1) * compressedBlock), { level: 4 });
-    header[3 + i] = BigInt(block.length);
-    blocks.push(block);
-  }
-  return [bytesView(header), ...blocks];
+type ArrayList = ReturnType<typeof createArrayList>;
+
+function plain(name: string, type: NumberType, components: number, count: number, load: () => NumberArray): DataArray {
+  return { name, components, tuples: count / components, type, load };
 }
 
-interface Appended {
-  readonly element: string;
-  readonly load: () => NumberArray;
-  readonly bytes: number;
+function element(name: string, content: readonly Body[]): Body {
+  if (content.length === 0) return () => '';
+  return (offsetOf) => `<${name}>\n${content.map((part) => part(offsetOf)).join('')}</${name}>\n`;
 }
 
-/** Puts all bytes of the list into the file. */
-function writeAll(handle: number, bytes: Uint8Array): void {
-  const step = 1 << 30;
-  for (let at = 0; at < bytes.length; ) at += writeSync(handle, bytes, at, Math.min(step, bytes.length - at));
+/** Cells of a cloud: a vertex a point, so that it can be seen and read again. */
+function vertices(count: number): CellTopology {
+  return {
+    types: new Uint8Array(count).fill(vertex),
+    offsets: Int32Array.from({ length: count + 1 }, (_, i) => i),
+    connectivity: Int32Array.from({ length: count }, (_, i) => i),
+  };
 }
 
-function textBytes(text: string): Uint8Array {
-  const bytes = Buffer.from(text, 'utf8');
-  const out = new Uint8Array(bytes.length + 1);
-  out.set(bytes);
-  return out;
-}
-
-function facesForFile(cells: CellTopology): { faces: Int32Array; ends: Int32Array } | undefined {
-  const { polyhedronFaces, polyhedronOffsets, types } = cells;
-  if (polyhedronFaces === undefined || polyhedronOffsets === undefined || !types.includes(polyhedron)) return undefined;
+/** Cumulative ends into the face stream, -1 for cells that are no polyhedra. */
+function faceEnds(types: Uint8Array, starts: Int32Array): Int32Array {
   const ends = new Int32Array(types.length);
-  for (let i = 0; i < types.length; i += 1) {
-    ends[i] = types[i] === polyhedron ? (polyhedronOffsets[i + 1] as number) : -1;
-  }
-  return { faces: polyhedronFaces, ends };
+  for (let i = 0; i < types.length; i += 1) ends[i] = types[i] === polyhedron ? (starts[i + 1] as number) : -1;
+  return ends;
 }
 
-function requireStructure(mesh: Dataset, kind: GridKind, path: string): GridStructure {
-  const [zone] = mesh.zones;
-  const structure = mesh.zones.length === 1 ? zone?.structure : undefined;
-  const wanted = { ImageData: 'image', RectilinearGrid: 'rectilinear', StructuredGrid: 'curvilinear' }[
-    kind as 'ImageData'
+function cellsElement(list: ArrayList, cells: CellTopology): Body {
+  const { types, offsets, connectivity, polyhedronFaces, polyhedronOffsets } = cells;
+  const parts = [
+    list.numbers(plain('connectivity', 'Int32', 1, connectivity.length, () => connectivity)),
+    list.numbers(plain('offsets', 'Int32', 1, types.length, () => offsets.subarray(1))),
+    list.numbers(plain('types', 'UInt8', 1, types.length, () => types)),
   ];
-  const fits = structure !== undefined && (structure.kind === wanted || kind === 'StructuredGrid');
-  if (!fits) {
-    throw new InputError({
-      file: path,
-      cause: `the target mesh is not ${kind === 'StructuredGrid' ? 'one structured grid' : `of the kind ${kind}`}`,
-      remedy: 'write a .vtu file instead',
-    });
+  if (polyhedronFaces !== undefined && polyhedronOffsets !== undefined && types.includes(polyhedron)) {
+    const ends = (): NumberArray => faceEnds(types, polyhedronOffsets);
+    parts.push(list.numbers(plain('faces', 'Int32', 1, polyhedronFaces.length, () => polyhedronFaces)));
+    parts.push(list.numbers(plain('faceoffsets', 'Int32', 1, types.length, ends)));
   }
-  return structure;
+  return element('Cells', parts);
 }
 
-/** Arrays to write: those of the mesh's own file that are not replaced, then the new ones. */
-function mergedArrays(own: readonly DataArray[], added: readonly DataArray[]): readonly DataArray[] {
-  const names = new Set(added.map((array) => array.name));
-  return [...own.filter((array) => !names.has(array.name)), ...added];
+/** Coordinates in the number type of the mesh's own file. */
+function inType(mesh: Dataset, values: Float64Array): NumberArray {
+  return mesh.pointType === 'Float32' ? new Float32Array(values) : values;
+}
+
+function pointsElement(list: ArrayList, mesh: Dataset): Body {
+  const load = (): NumberArray => inType(mesh, mesh.points);
+  return element('Points', [list.numbers(plain('Points', mesh.pointType, 3, mesh.points.length, load))]);
+}
+
+function structureFor(mesh: Dataset, kind: GridKind, path: string): GridStructure {
+  const structure = mesh.zones.length === 1 ? mesh.zones[0]?.structure : undefined;
+  const fits =
+    (kind === 'StructuredGrid' && structure !== undefined) ||
+    (kind === 'RectilinearGrid' && structure?.kind === 'rectilinear') ||
+    (kind === 'ImageData' && structure?.kind === 'image');
+  if (fits) return structure as GridStructure;
+  const wanted = {
+    StructuredGrid: 'one structured grid',
+    RectilinearGrid: 'a rectilinear grid',
+    ImageData: 'an image',
+  };
+  throw new InputError({
+    file: path,
+    cause: `the mesh of ${mesh.file} is not ${wanted[kind as keyof typeof wanted]}`,
+    remedy: 'write a .vtu file instead',
+  });
+}
+
+/** Arrays of the mesh's own file in their order, replaced where a new one has the name, then the other new ones. */
+function mergedArrays(
+  own: readonly DataArray[],
+  added: readonly DataArray[],
+  tuples: number,
+  path: string,
+): readonly DataArray[] {
+  const news = new Map(added.map((array) => [array.name, array]));
+  const kept = own.map((array) => news.get(array.name) ?? array);
+  const names = new Set(own.map((array) => array.name));
+  const merged = [...kept, ...[...news.values()].filter((array) => !names.has(array.name))];
+  const wrong = merged.find((array) => array.tuples !== tuples);
+  if (wrong !== undefined) {
+    const cause = `it has ${wrong.tuples} entries where the mesh has ${tuples} places`;
+    throw new InputError({ file: path, place: `array ${wrong.name}`, cause });
+  }
+  return merged;
+}
+
+function fieldData(list: ArrayList, request: WriteRequest): Body {
+  const notes = new Map([...request.mesh.notes, ...request.notes]);
+  const parts = [...notes].map(([name, text]) => list.text(name, text));
+  const { time } = request.mesh;
+  if (time !== undefined) {
+    const stored = list.numbers(plain('TimeValue', 'Float64', 1, 1, () => Float64Array.of(time)));
+    parts.push((offsetOf) => stored(offsetOf).replace('<DataArray ', '<DataArray NumberOfTuples="1" '));
+  }
+  return element('FieldData', parts);
+}
+
+/** Opening tag and geometry of a structured grid. */
+function structuredGeometry(list: ArrayList, mesh: Dataset, kind: GridKind, structure: GridStructure): [string, Body] {
+  const { extent, origin = [0, 0, 0], spacing = [1, 1, 1], direction, axes = [] } = structure;
+  const whole = `${kind} WholeExtent="${extent.join(' ')}"`;
+  if (kind === 'ImageData') {
+    const turned = direction === undefined ? '' : ` Direction="${direction.join(' ')}"`;
+    return [`${whole} Origin="${origin.join(' ')}" Spacing="${spacing.join(' ')}"${turned}`, () => ''];
+  }
+  if (kind === 'RectilinearGrid') {
+    const parts = axes.map((axis, i) =>
+      list.numbers(plain(`Coordinate${'XYZ'[i]}`, mesh.pointType, 1, axis.length, () => inType(mesh, axis))),
+    );
+    return [whole, element('Coordinates', parts)];
+  }
+  return [whole, pointsElement(list, mesh)];
+}
+
+/** Points and cells of a mesh, without making those that are computed when asked for. */
+function sizeOf(mesh: Dataset): readonly [number, number] {
+  const last = mesh.zones.at(-1);
+  if (last !== undefined) return [last.pointEnd, last.cellEnd];
+  return [mesh.points.length / 3, mesh.cells?.types.length ?? 0];
 }
 
 /**
- * Writes a VTK XML file with raw appended data (UInt64 headers), beside its name and renamed when complete.
+ * Writes a mesh with its arrays. Topology, number types, notes and time of the mesh's own file are carried through;
+ * arrays of the request replace those of the same name. A cloud without cells gets a vertex at each point.
  *
- * @throws InputError when a structured format is asked for a mesh that is not of that kind
+ * @throws InputError when a structured format is asked for a mesh that is not of that kind, or an array does not fit
  */
 export async function writeVtkXml(path: string, request: WriteRequest, kind: GridKind): Promise<void> {
   const { mesh, compress = false } = request;
-  const { cells } = mesh;
-  if (cells === undefined) {
-    throw new InputError({
-      file: path,
-      cause: 'a point cloud has no mesh to write',
-      remedy: 'write a .csv file instead',
-    });
-  }
-  const list: Appended[] = [];
-  let raw = 0;
-  const declare = (array: Omit<DataArray, 'type'> & { readonly type: string }, bytes: number): string => {
-    const offset = compress ? `@${list.length}@` : String(raw);
-    const element =
-      `<DataArray type="${array.type}" Name="${escapeAttribute(array.name)}" ` +
-      `NumberOfComponents="${array.components}" format="appended" offset="${offset}"/>`;
-    list.push({ element, load: array.load, bytes });
-    raw += 8 + bytes;
-    return element;
-  };
-  const declareArray = (array: DataArray): string =>
-    declare(array, array.tuples * array.components * bytesOf(array.type));
-  const plain = (name: string, type: DataArray['type'], values: NumberArray, components = 1): string =>
-    declareArray({ name, components, tuples: values.length / components, type, load: () => values });
-  const pointValues = (): NumberArray => (mesh.pointType === 'Float32' ? Float32Array.from(mesh.points) : mesh.points);
-  const pointCount = mesh.points.length / 3;
-  const pointsElement = (): string =>
-    declareArray({ name: 'Points', components: 3, tuples: pointCount, type: mesh.pointType, load: pointValues });
-
-  const section = (name: string, arrays: readonly DataArray[]): string =>
-    arrays.length === 0 ? '' : `<${name}>\n${arrays.map(declareArray).join('\n')}\n</${name}>\n`;
-  let fieldData = '';
-  for (const [name, text] of request.notes) {
-    const bytes = textBytes(text);
-    fieldData += `<DataArray type="String" Name="${escapeAttribute(name)}" NumberOfTuples="1" format="ascii">${[...bytes].join(' ')}</DataArray>\n`;
-  }
-  if (mesh.time !== undefined) {
-    fieldData += `<DataArray type="Float64" Name="TimeValue" NumberOfTuples="1" format="ascii">${mesh.time}</DataArray>\n`;
-  }
-  if (fieldData !== '') fieldData = `<FieldData>\n${fieldData}</FieldData>\n`;
-
-  const data = (): string =>
-    section('PointData', mergedArrays(mesh.pointArrays, request.pointArrays)) +
-    section('CellData', mergedArrays(mesh.cellArrays, request.cellArrays));
-  let body: string;
-  if (kind === 'UnstructuredGrid') {
-    const faces = facesForFile(cells);
-    const cellArrays =
-      `${plain('connectivity', 'Int32', cells.connectivity)}\n` +
-      `${plain('offsets', 'Int32', cells.offsets.slice(1))}\n${plain('types', 'UInt8', cells.types)}\n` +
-      (faces === undefined
-        ? ''
-        : `${plain('faces', 'Int32', faces.faces)}\n${plain('faceoffsets', 'Int32', faces.ends)}\n`);
-    body =
-      `<UnstructuredGrid>\n${fieldData}<Piece NumberOfPoints="${pointCount}" NumberOfCells="${cells.types.length}">\n` +
-      `${data()}<Points>\n${pointsElement()}\n</Points>\n<Cells>\n${cellArrays}</Cells>\n</Piece>\n</UnstructuredGrid>\n`;
+  const structure = kind === 'UnstructuredGrid' ? undefined : structureFor(mesh, kind, path);
+  const [pointCount, cellCount] = sizeOf(mesh);
+  const list = createArrayList();
+  const field = fieldData(list, request);
+  const section = (name: string, own: readonly DataArray[], added: readonly DataArray[], tuples: number): Body =>
+    element(
+      name,
+      mergedArrays(own, added, tuples, path).map((array) => list.numbers(array)),
+    );
+  const pointData = section('PointData', mesh.pointArrays, request.pointArrays, pointCount);
+  const cellData = section('CellData', mesh.cellArrays, request.cellArrays, cellCount);
+  let tag = kind as string;
+  let piece: string;
+  let geometry: Body;
+  if (structure === undefined) {
+    const cells = mesh.cells ?? vertices(pointCount);
+    piece = `NumberOfPoints="${pointCount}" NumberOfCells="${cells.types.length}"`;
+    const points = pointsElement(list, mesh);
+    const topology = cellsElement(list, cells);
+    geometry = (offsetOf) => points(offsetOf) + topology(offsetOf);
   } else {
-    const structure = requireStructure(mesh, kind, path);
-    const extent = structure.extent.join(' ');
-    let attributes = `WholeExtent="${extent}"`;
-    let geometry = '';
-    if (kind === 'ImageData') {
-      attributes += ` Origin="${structure.origin?.join(' ')}" Spacing="${structure.spacing?.join(' ')}"`;
-      if (structure.direction !== undefined) attributes += ` Direction="${structure.direction.join(' ')}"`;
-    } else if (kind === 'RectilinearGrid') {
-      const axes = structure.axes as readonly [Float64Array, Float64Array, Float64Array];
-      const stored = (axis: Float64Array): NumberArray =>
-        mesh.pointType === 'Float32' ? Float32Array.from(axis) : axis;
-      geometry = `<Coordinates>\n${axes.map((axis, i) => plain(`Coordinate${'XYZ'[i]}`, mesh.pointType, stored(axis))).join('\n')}\n</Coordinates>\n`;
-    } else {
-      geometry = `<Points>\n${pointsElement()}\n</Points>\n`;
-    }
-    body = `<${kind} ${attributes}>\n${fieldData}<Piece Extent="${extent}">\n${data()}${geometry}</Piece>\n</${kind}>\n`;
+    piece = `Extent="${structure.extent.join(' ')}"`;
+    [tag, geometry] = structuredGeometry(list, mesh, kind, structure);
   }
-
-  await writeBeside(path, (temporary) => {
-    const handle = openSync(temporary, 'w');
-    try {
-      const head = (content: string): string =>
-        `<?xml version="1.0"?>\n<VTKFile type="${kind}" version="1.0" byte_order="LittleEndian" header_type="UInt64"` +
-        `${compress ? ' compressor="vtkZLibDataCompressor"' : ''}>\n${content}<AppendedData encoding="raw">\n_`;
-      if (compress) {
-        // Offsets of compressed arrays are known only when they are compressed: the data go to memory first.
-        const parts = list.map((entry) => compressArray(entry.load()));
-        let offset = 0;
-        const offsets = parts.map((blocks) => {
-          const at = offset;
-          offset += blocks.reduce((sum, block) => sum + block.length, 0);
-          return at;
-        });
-        writeAll(
-          handle,
-          Buffer.from(head(body.replace(/offset="@(\d+)@"/g, (_, i) => `offset="${offsets[Number(i)]}"`))),
-        );
-        for (const blocks of parts) for (const block of blocks) writeAll(handle, block);
-      } else {
-        writeAll(handle, Buffer.from(head(body)));
-        for (const entry of list) {
-          const values = entry.load();
-          if (values.byteLength !== entry.bytes) {
-            throw new InputError({ file: path, cause: `an array has ${values.byteLength} bytes, not ${entry.bytes}` });
-          }
-          writeAll(handle, bytesView(BigUint64Array.of(BigInt(entry.bytes))));
-          writeAll(handle, bytesView(values));
-        }
-      }
-      writeAll(handle, Buffer.from('\n</AppendedData>\n</VTKFile>\n'));
-    } finally {
-      closeSync(handle);
-    }
-  });
+  const body: Body = (offsetOf) =>
+    `<${tag}>\n${field(offsetOf)}<Piece ${piece}>\n${pointData(offsetOf)}${cellData(offsetOf)}${geometry(offsetOf)}` +
+    `</Piece>\n</${kind}>\n`;
+  await writeVtkFile(path, { type: kind, arrays: list.arrays, body }, compress);
 }
