@@ -111,6 +111,15 @@ function readMixed(session: CgnsSession, base: SectionBase, points: number): Mix
   }
   if (at !== values.length)
     throw wrong(connectivity, `${values.length - at} values are left over after the last element`);
+  const offsets = childOf(base.node, 'DataArray_t', 'ElementStartOffset');
+  if (offsets !== undefined) {
+    // What the types say is enough, but a file that contradicts itself is not to be trusted.
+    const stated = readIndices(session, offsets);
+    const agree = stated.length === count + 1 && stated[count] === values.length;
+    if (!agree || starts.some((start, i) => stated[i] !== start - 1)) {
+      throw wrong(offsets, 'the starts contradict the types of the elements');
+    }
+  }
   return { ...base, kind: 'mixed', types, starts, values };
 }
 
