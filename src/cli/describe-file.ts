@@ -3,6 +3,7 @@ import { InputError } from '../basis/errors.js';
 import { holdsBigIntegers } from '../basis/number-arrays.js';
 import { recogniseFields, standardNameOf, suggestRenames, unitOf } from '../basis/quantities.js';
 import { buildMesh } from '../mesh/build.js';
+import { isVolumeType } from '../mesh/cell-faces.js';
 import { cellShape } from '../mesh/cell-types.js';
 import { measureMesh } from '../mesh/geometry.js';
 
@@ -107,9 +108,10 @@ function countTypes(dataset: Dataset): Record<string, number> {
   return names;
 }
 
+/** Undefined for point clouds, surfaces and plane sections. */
 function describeMesh(dataset: Dataset): MeshDescription | undefined {
+  if (dataset.cells?.types.some(isVolumeType) !== true) return undefined;
   const mesh = buildMesh(dataset);
-  if (mesh.cellCount === 0) return undefined;
   const { cellVolumes } = measureMesh(mesh);
   let volume = 0;
   let smallestVolume = Number.POSITIVE_INFINITY;
@@ -146,7 +148,7 @@ function troubles(dataset: Dataset): string[] {
  * @param measure  build the faces of the cells and measure them (seconds for a million cells)
  */
 export function describeDataset(dataset: Dataset, measure: boolean): FileDescription {
-  const mesh = measure && dataset.cells !== undefined ? describeMesh(dataset) : undefined;
+  const mesh = measure ? describeMesh(dataset) : undefined;
   return {
     file: dataset.file,
     format: dataset.format,

@@ -91,6 +91,19 @@ describe('describe', () => {
     expect(without.mesh).toBeUndefined();
   });
 
+  it('takes a plane section of cells for what it is', async () => {
+    writeFileSync(
+      at('plane.vtu'),
+      bricks
+        .replace('0 1 4 3 6 7 10 9 1 2 5 4 7 8 11 10', '0 1 4 3 1 2 5 4')
+        .replace('8 16', '4 8')
+        .replace('12 12<', '9 9<'),
+    );
+    const found = JSON.parse((await run('describe', at('plane.vtu'), '--json')).out) as FileDescription;
+    expect(found.cellTypes).toEqual({ quadrilateral: 2 });
+    expect(found.mesh).toBeUndefined();
+  });
+
   it('prints for people, and nothing with --quiet', async () => {
     const { out } = await run('describe', at('bricks.vtu'));
     expect(out).toContain('2 hexahedron');
