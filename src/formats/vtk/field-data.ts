@@ -1,3 +1,4 @@
+import type { NumberArray } from '../../basis/dataset.js';
 import { type FileContext, readArray } from './arrays.js';
 import { childNamed, type Element } from './head.js';
 
@@ -9,8 +10,8 @@ export interface FieldData {
 }
 
 /** Strings are stored as the codes of their characters with a zero behind each; several become lines. */
-function textOf(codes: ArrayLike<number | bigint>): string {
-  const bytes = Buffer.from(Uint8Array.from(codes as ArrayLike<number>));
+function textOf(codes: NumberArray): string {
+  const bytes = Buffer.from(Uint8Array.from(codes as Int16Array));
   const text = bytes.toString('utf8');
   return (text.endsWith('\0') ? text.slice(0, -1) : text).replaceAll('\0', '\n');
 }
@@ -28,9 +29,11 @@ export async function readFieldData(grid: Element, context: FileContext): Promis
       remarks.push(`field data ${name} are neither text nor a time and were left out`);
       continue;
     }
-    const plain = isText ? { ...element, attributes: { ...element.attributes, type: 'UInt8' } } : element;
+    // As text the codes beyond 127 are written as negative numbers or as they are; Int16 holds both.
+    const type = element.attributes.format === 'ascii' ? 'Int16' : 'UInt8';
+    const plain = isText ? { ...element, attributes: { ...element.attributes, type } } : element;
     const values = (await readArray(plain, context, { place: 'FieldData' })).load();
-    if (isText) notes.set(name, textOf(values as Uint8Array));
+    if (isText) notes.set(name, textOf(values));
     else if (values.length > 0) time = Number(values[0]);
   }
   return { notes, remarks, ...(time === undefined ? {} : { time }) };
