@@ -48,8 +48,8 @@ export function buildCellLocator(mesh: CellMesh): CellLocator {
  * +1 or -1 when the ray from (x, y, z) towards +x passes the triangle, by the sense of its area vector along x; 0 when not.
  *
  * The rim of the triangle, seen along x, is wound around (y, z) with half-open edges, each evaluated from its lower to
- * its upper end. Two triangles that share an edge so come to the same answer about it, and of all cells that tile a
- * body exactly one contains a place inside, to the last bit.
+ * its upper end. Two triangles that share an edge so come to the same answer about it, and the windings of all cells that
+ * tile a body add up to exactly one at a place inside: none falls between cells.
  */
 function rayThroughTriangle(
   ax: number,
@@ -201,7 +201,7 @@ export function locateCell(locator: CellLocator, x: number, y: number, z: number
         y <= boxes[b + 4]! &&
         z >= boxes[b + 2]! &&
         z <= boxes[b + 5]! &&
-        windingOfCell(mesh, items[i]!, x, y, z) !== 0
+        windingOfCell(mesh, items[i]!, x, y, z) > 0
       )
         return items[i]!;
     }

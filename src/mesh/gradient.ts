@@ -100,11 +100,14 @@ function addMoments(op: GradientOperator, cell: number, from: number): void {
   const x = c[3 * cell]!;
   const y = c[3 * cell + 1]!;
   const z = c[3 * cell + 2]!;
+  const nearest = from === 0 ? 0 : 1e-12 * (offsets[0]! ** 2 + offsets[1]! ** 2 + offsets[2]! ** 2);
   for (let i = from; i < found; i++) {
     const o = 3 * others[i]!;
-    const dx = c[o]! + offsets[3 * i]! - x;
-    const dy = c[o + 1]! + offsets[3 * i + 1]! - y;
-    const dz = c[o + 2]! + offsets[3 * i + 2]! - z;
+    let dx = c[o]! + offsets[3 * i]! - x;
+    let dy = c[o + 1]! + offsets[3 * i + 1]! - y;
+    let dz = c[o + 2]! + offsets[3 * i + 2]! - z;
+    // A wider ring comes back to the cell itself, but for rounding.
+    if (others[i] === cell && dx * dx + dy * dy + dz * dz < nearest) dx = dy = dz = 0;
     offsets[3 * i] = dx;
     offsets[3 * i + 1] = dy;
     offsets[3 * i + 2] = dz;

@@ -15,6 +15,7 @@ import {
   makeDataset,
   mixedBox,
   polyBox,
+  prismBox,
   quadSheet,
   stepChannel,
   tetBox,
@@ -29,6 +30,7 @@ describe('gradient', () => {
   const kinds = [
     ['hexahedra', hexBox(5, 5, 5, { warp: 0.3 })],
     ['tetrahedra', tetBox(4, 4, 4, { warp: 0.3 })],
+    ['prisms', prismBox(4, 3, 3, { warp: 0.3, seed: 'c' })],
     ['mixed', mixedBox(8, 4, 4, { warp: 0.3 })],
     ['honeycomb', polyBox(5, 5, 4, { warp: 0.3 })],
     ['flat hexahedra 1000:1', hexBox(5, 5, 5, { lengths: [1, 1e-3, 1] })],
