@@ -8,6 +8,7 @@ import { measureMesh } from '../../src/mesh/geometry.js';
 import { matchPeriodicPatches } from '../../src/mesh/periodic.js';
 import { makeShapes, temporaryFolder, unpackShapes } from '../helpers/cgns-files.js';
 import { cubes, group, numbers, text, writeTree } from '../helpers/cgns-tree.js';
+import { hasPythonModule, runPython } from '../helpers/python.js';
 
 const folder = temporaryFolder();
 const fixtures = join(folder.path, 'fixtures');
@@ -334,6 +335,24 @@ describe('layouts', () => {
       /Density were made dimensionless by a reference that the file does not give/,
     );
     expect(dataset.remarks.join('\n')).not.toMatch(/Mach/);
+  });
+
+  it.skipIf(!hasPythonModule('h5py'))('reads big-endian numbers and compressed arrays', async () => {
+    const path = await write(cubes());
+    runPython([
+      '-c',
+      `import h5py, numpy, sys
+f = h5py.File(sys.argv[1], 'a')
+for place in ['Base/Zone/Fields/Pressure', 'Base/Zone/GridCoordinates/CoordinateX', 'Base/Zone/faces/ElementConnectivity']:
+    g = f[place]
+    v = g[' data'][...]
+    del g[' data']
+    g.create_dataset(' data', data=v.astype(v.dtype.newbyteorder('>')), compression='gzip', shuffle=True)`,
+      path,
+    ]);
+    const dataset = await read(path);
+    close(volumes(dataset), [1, 1]);
+    expect(values(dataset.cellArrays, 'Pressure')).toEqual([3, 4]);
   });
 
   it('reads the same while other files are read, and after the file was moved in between', async () => {

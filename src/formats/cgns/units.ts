@@ -154,7 +154,11 @@ function fromUnits(units: Units, exponents: Exponents): Conversion {
 export function conversionOf(session: CgnsSession, inherited: DataContext, node: CgnsNode): Conversion {
   const { dataClass, units } = inherit(session, inherited, node);
   if (dataClass === 'NormalizedByUnknownDimensional') return { scale: 1, offset: 0, doubt: 'unknown reference' };
-  if (dataClass === 'NondimensionalParameter' || dataClass === 'DimensionlessConstant') return { scale: 1, offset: 0 };
+  if (dataClass === 'NondimensionalParameter' || dataClass === 'DimensionlessConstant') {
+    // A quantity with a dimension was divided by something that such a class does not tell.
+    const dimensional = exponentsOf(node.name)?.some((power) => power !== 0) ?? false;
+    return { scale: 1, offset: 0, ...(dimensional ? { doubt: 'unknown reference' as const } : {}) };
+  }
   const normalised = dataClass === 'NormalizedByDimensional';
   const reference = childOf(node, 'DataConversion_t');
   let [factor, shift] = [1, 0];

@@ -10,6 +10,7 @@ import { type FaceFields, writeFaceFields } from './write-faces.js';
 import { createNode, createRoot, type NodeData, wholeData } from './write-node.js';
 import { componentNames, shortName, writeNotes, writeSiUnits, writeSolutions } from './write-solution.js';
 import {
+  countTypes,
   createCondition,
   createSection,
   createZone,
@@ -121,8 +122,9 @@ function writePolyhedra(file: Hdf5File, base: string, dataset: Dataset, faces: F
 
 function highestDimension(cells: CellTopology): number {
   let highest = 0;
-  const met = new Set<number>(cells.types);
-  for (const type of met) highest = Math.max(highest, cellShape(type)?.dimension ?? 0);
+  countTypes(cells).forEach((count, type) => {
+    if (count > 0) highest = Math.max(highest, cellShape(type)?.dimension ?? 0);
+  });
   return highest;
 }
 

@@ -121,18 +121,18 @@ function recipeOf(vtk: number): Recipe | undefined {
   return linear === undefined || shape === undefined || shape.name.endsWith('prism') ? undefined : recipeOf(linear.vtk);
 }
 
-/** Cells of the dimension that have no element in the standard but polyhedra. */
+/** Number of cells of each VTK type, by type. */
+export function countTypes(cells: CellTopology, begin = 0, end = cells.types.length): Int32Array {
+  const counts = new Int32Array(256);
+  for (let c = begin; c < end; c++) counts[cells.types[c] as number] = (counts[cells.types[c] as number] as number) + 1;
+  return counts;
+}
+
+/** Some volume cell has no element in the standard but a polyhedron. */
 export function needsPolyhedra(cells: CellTopology): boolean {
-  const known = new Map<number, boolean>();
-  for (const type of cells.types) {
-    let needs = known.get(type);
-    if (needs === undefined) {
-      needs = cellShape(type)?.dimension === 3 && recipeOf(type) === undefined;
-      known.set(type, needs);
-    }
-    if (needs) return true;
-  }
-  return false;
+  return countTypes(cells).some(
+    (count, type) => count > 0 && cellShape(type)?.dimension === 3 && recipeOf(type) === undefined,
+  );
 }
 
 /** VTK points of a wedge (linear or quadratic) in the standard's order where its first triangle looks at the second. */
@@ -180,16 +180,10 @@ function groups(
   dimension: number,
 ): { recipe: Recipe | undefined; cells: Int32Array }[] {
   const cells = dataset.cells as CellTopology;
-  const counts = new Map<number, number>();
-  for (let c = zone.cellBegin; c < zone.cellEnd; c++) {
-    const type = cells.types[c] as number;
-    counts.set(type, (counts.get(type) ?? 0) + 1);
-  }
   const result: { recipe: Recipe | undefined; cells: Int32Array; key: number }[] = [];
-  const listOf = new Map<number, { list: Int32Array; at: number }>();
-  for (const [type, count] of counts) {
-    const shape = cellShape(type);
-    if (shape?.dimension !== dimension) continue;
+  const lists: (Int32Array | undefined)[] = new Array(256).fill(undefined);
+  countTypes(cells, zone.cellBegin, zone.cellEnd).forEach((count, type) => {
+    if (count === 0 || cellShape(type)?.dimension !== dimension) return;
     const recipe = type === 7 ? undefined : recipeOf(type);
     if (recipe === undefined && type !== 7) {
       throw new InputError({
@@ -200,12 +194,17 @@ function groups(
       });
     }
     const list = new Int32Array(count);
-    listOf.set(type, { list, at: 0 });
+    lists[type] = list;
     result.push({ recipe, cells: list, key: recipe?.element.number ?? NGON });
-  }
+  });
+  const filled = new Int32Array(256);
   for (let c = zone.cellBegin; c < zone.cellEnd; c++) {
-    const entry = listOf.get(cells.types[c] as number);
-    if (entry !== undefined) entry.list[entry.at++] = c;
+    const type = cells.types[c] as number;
+    const list = lists[type];
+    if (list === undefined) continue;
+    const at = filled[type] as number;
+    list[at] = c;
+    filled[type] = at + 1;
   }
   return result.sort((a, b) => a.key - b.key);
 }
