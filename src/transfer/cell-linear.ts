@@ -51,7 +51,7 @@ export interface CellLinearOutput {
 }
 
 /** Triangles of all boundary faces and the cells behind them. */
-function boundaryOf(mesh: CellMesh): { boundary: TriangleTree; boundaryCells: Int32Array } {
+export function boundaryOf(mesh: CellMesh): { boundary: TriangleTree; boundaryCells: Int32Array } {
   const faces = Int32Array.from({ length: mesh.faceCount - mesh.innerFaceCount }, (_, i) => i + mesh.innerFaceCount);
   const triangles = faceTriangles(mesh, faces);
   const cells = new Int32Array(triangles.length / 9);

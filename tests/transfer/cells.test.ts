@@ -6,6 +6,7 @@ import { buildCellLocator, locateCell, windingOfCell } from '../../src/mesh/cell
 import type { CellMesh, MeshGeometry } from '../../src/mesh/cell-mesh.js';
 import { measureMesh } from '../../src/mesh/geometry.js';
 import { cellLinearRange, prepareCellLinear } from '../../src/transfer/cell-linear.js';
+import { pointLinearRange, preparePointLinear } from '../../src/transfer/cell-linear-points.js';
 import type { SourceField } from '../../src/transfer/cell-linear-slopes.js';
 import { type ConservativeOptions, conservativeRange, prepareConservative } from '../../src/transfer/conservative.js';
 import { bodiesOf } from '../../src/transfer/conservative-cells.js';
@@ -20,6 +21,7 @@ import {
   refinedBox,
   stepChannel,
   tetBox,
+  voxelBox,
 } from '../helpers/meshes.js';
 
 interface Measured {
@@ -196,6 +198,82 @@ describe('linear transfer from cells', () => {
     const constant = linear(source, [field], targets, { outside: -7 });
     expect([...constant.outside]).toEqual([3, 3, 0]);
     expect(constant.fields[0]![0]!).toBe(-7);
+  });
+});
+
+describe('linear transfer from points', () => {
+  const transferred = (
+    dataset: Dataset,
+    f: (x: number, y: number, z: number) => number,
+    targets: Float64Array,
+    outside: 'nearest' | 'extrapolate' | number = 'nearest',
+  ) => {
+    const { mesh, geometry } = measured(dataset);
+    const values = Float64Array.from({ length: dataset.points.length / 3 }, (_, p) =>
+      f(dataset.points[3 * p]!, dataset.points[3 * p + 1]!, dataset.points[3 * p + 2]!),
+    );
+    const n = targets.length / 3;
+    const out = { fields: [new Float64Array(n)], outside: new Uint8Array(n), distance: new Float64Array(n) };
+    const plan = structuredClone(preparePointLinear(dataset, mesh, geometry, [{ components: 1, values }], { outside }));
+    pointLinearRange(plan, targets, 0, n, out);
+    return { ...out, values: out.fields[0]! };
+  };
+  const f = (x: number, y: number, z: number): number => 1 + 2 * x - 3 * y + 4 * z;
+
+  it.each([...lattices, ['voxels', voxelBox(4, 3, 3)] as const])('%s: reproduces a linear field', (_name, dataset) => {
+    const targets = randomPlaces(500, 'points');
+    const out = transferred(dataset, f, targets);
+    for (let i = 0; i < 500; i++) {
+      expect(out.outside[i]).toBe(0);
+      expect(out.values[i]!).toBeCloseTo(f(targets[3 * i]!, targets[3 * i + 1]!, targets[3 * i + 2]!), 12);
+    }
+  });
+
+  it.each([
+    ['hexahedra: x y z is trilinear', hexBox(3, 4, 2), (x: number, y: number, z: number) => x * y * z],
+    ['wedges: x z is linear times linear', prismBox(3, 4, 2), (x: number, _y: number, z: number) => x * z],
+  ])('%s and exact', (_name, dataset, product) => {
+    const targets = randomPlaces(500, 'products');
+    const out = transferred(dataset, product, targets);
+    for (let i = 0; i < 500; i++)
+      expect(out.values[i]!).toBeCloseTo(product(targets[3 * i]!, targets[3 * i + 1]!, targets[3 * i + 2]!), 13);
+  });
+
+  it('gives the values of the points at the points, and no new extrema', () => {
+    for (const [, dataset] of lattices) {
+      const rough = (x: number, y: number, z: number): number => Math.sin(40 * x + 30 * y * y + 20 * z);
+      const at = transferred(dataset, rough, dataset.points);
+      const used = new Set(buildMesh(dataset).facePoints);
+      at.values.forEach((v, p) => {
+        if (!used.has(p)) return;
+        expect(v).toBeCloseTo(rough(dataset.points[3 * p]!, dataset.points[3 * p + 1]!, dataset.points[3 * p + 2]!), 9);
+      });
+    }
+    const random = transferred(mixedBox(8, 3, 3), (x) => (x > 0.5 ? 1 : 0), randomPlaces(2000, 'random'));
+    expect(Math.min(...random.values)).toBeGreaterThanOrEqual(-1e-13);
+    expect(Math.max(...random.values)).toBeLessThanOrEqual(1 + 1e-13);
+  });
+
+  it('second order over refinements, and outside as asked', () => {
+    const smooth = (x: number, y: number, z: number): number => Math.sin(4 * x) * Math.cos(3 * y) * Math.exp(z);
+    const targets = randomPlaces(1500, 'refine');
+    const errors = [4, 8, 16].map((n) => {
+      const out = transferred(polyBox(n, n, n), smooth, targets).values;
+      let s = 0;
+      out.forEach((v, i) => {
+        s += (v - smooth(targets[3 * i]!, targets[3 * i + 1]!, targets[3 * i + 2]!)) ** 2;
+      });
+      return Math.sqrt(s);
+    });
+    expect(Math.abs(Math.log2(errors[0]! / errors[1]!) - 2)).toBeLessThan(0.2);
+    expect(Math.abs(Math.log2(errors[1]! / errors[2]!) - 2)).toBeLessThan(0.2);
+    const places = Float64Array.of(1.1, 0.4, 0.4, 3, 0.4, 0.4);
+    expect(transferred(hexBox(4, 4, 4), f, places).values[0]!).toBeCloseTo(f(1, 0.4, 0.4), 12);
+    const on = transferred(hexBox(4, 4, 4), f, places, 'extrapolate');
+    expect(on.values[0]!).toBeCloseTo(f(1.1, 0.4, 0.4), 12);
+    expect(on.values[1]!).toBeCloseTo(f(1.25, 0.4, 0.4), 12);
+    expect([...on.outside]).toEqual([2, 2]);
+    expect(transferred(hexBox(4, 4, 4), f, places, 5).values[1]!).toBe(5);
   });
 });
 
