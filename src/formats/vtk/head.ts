@@ -70,7 +70,8 @@ function appendedEnd(reader: FileReader, begin: number): number {
   const tailBegin = Math.max(begin, reader.size - 4096);
   const tail = Buffer.from(reader.bytes(tailBegin, reader.size - tailBegin));
   const close = tail.lastIndexOf('</AppendedData');
-  if (close < 0 || tail.indexOf('</VTKFile', close) < 0) {
+  const last = close < 0 ? -1 : tail.indexOf('</VTKFile', close);
+  if (last < 0 || tail.indexOf('>', last) < 0) {
     throw bad(reader.path, 'the file ends before its appended data are closed: it is truncated');
   }
   return tailBegin + close;
