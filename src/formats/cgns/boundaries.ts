@@ -31,7 +31,7 @@ interface RawPatch {
 }
 
 /** Kind of a boundary from the standard's BCType_t. */
-export function boundaryKind(type: string): BoundaryKind {
+function boundaryKind(type: string): BoundaryKind {
   if (type.startsWith('BCWall')) return 'wall';
   if (type.startsWith('BCInflow') || type === 'BCTunnelInflow') return 'inflow';
   if (type.startsWith('BCOutflow') || type === 'BCTunnelOutflow' || type === 'BCExtrapolate') return 'outflow';

@@ -159,7 +159,7 @@ function polygonBlock(section: RaggedSection): CellBlock {
 }
 
 /** Finds the polygon of a face number among the zone's sections of polygons. */
-export function polygonSection(sections: readonly RaggedSection[], element: number): RaggedSection | undefined {
+function polygonSection(sections: readonly RaggedSection[], element: number): RaggedSection | undefined {
   for (const section of sections) if (element >= section.first && element <= section.last) return section;
   return undefined;
 }

@@ -56,7 +56,7 @@ export function damaged(path: string, place: string, error: unknown): Error {
 }
 
 /** @throws MachineError when the file cannot be read, InputError when it is not HDF5 */
-export function requireHdf5(path: string): number {
+function requireHdf5(path: string): number {
   let bytes: number;
   const head = Buffer.alloc(32);
   try {
@@ -111,16 +111,6 @@ export function closeHdf5(file: Hdf5File): void {
     Module.close_file(file.id);
   } catch {
     // A damaged file may fail to close; the error that matters was raised before.
-  }
-}
-
-/** Opens, calls and closes whatever happens. */
-export function withHdf5<T>(path: string, use: (file: Hdf5File) => T): T {
-  const file = openHdf5(path);
-  try {
-    return use(file);
-  } finally {
-    closeHdf5(file);
   }
 }
 

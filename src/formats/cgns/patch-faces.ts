@@ -1,5 +1,5 @@
 import type { CellTopology } from '../../basis/dataset.js';
-import { cellFaces } from './elements.js';
+import { cellShape } from '../../mesh/cell-types.js';
 
 /** Polygons by point numbers, grown one by one. */
 export interface PolygonList {
@@ -84,7 +84,7 @@ export function facesOfMarkedPoints(
       }
       continue;
     }
-    for (const face of cellFaces(cells.types[c] as number) ?? []) {
+    for (const face of cellShape(cells.types[c] as number)?.faces ?? []) {
       const points = face.map((corner) => cells.connectivity[begin + corner] as number);
       if (points.every((point) => marked[point - pointBegin] === 1)) candidate(points);
     }

@@ -49,7 +49,7 @@ function wrong(node: CgnsNode, cause: string): InputError {
 }
 
 /** @throws InputError unless all values lie in 1 ... most */
-export function requirePoints(node: CgnsNode, values: Int32Array, most: number): void {
+function requirePoints(node: CgnsNode, values: Int32Array, most: number): void {
   for (let i = 0; i < values.length; i++) {
     const value = values[i] as number;
     if (value < 1 || value > most) throw wrong(node, `there is no point ${value} in a zone of ${most} points`);
@@ -218,7 +218,7 @@ export function readSections(session: CgnsSession, zone: CgnsNode, points: numbe
 }
 
 /** Highest dimension of a section's elements. */
-export function sectionDimension(section: Section): number {
+function sectionDimension(section: Section): number {
   if (section.kind === 'uniform') return section.type.dimension;
   if (section.kind !== 'mixed') return section.kind === 'polyhedra' ? 3 : 2;
   let highest = 0;

@@ -27,7 +27,7 @@ export function locationOf(session: CgnsSession, node: CgnsNode): string {
 }
 
 /** Tells whether values belong to listed places only. */
-export function hasPointSet(node: CgnsNode): boolean {
+function hasPointSet(node: CgnsNode): boolean {
   return node.children.some((child) => child.label === 'IndexArray_t' || child.label === 'IndexRange_t');
 }
 

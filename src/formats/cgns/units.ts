@@ -55,7 +55,7 @@ const temperatures: Readonly<Record<string, readonly [number, number]>> = {
 const angles: Readonly<Record<string, number>> = { Degree: Math.PI / 180, Radian: 1 };
 
 /** Units of a DimensionalUnits_t text: five fields of 32 characters (more are electric and luminous ones). */
-export function parseUnits(text: string): Units {
+function parseUnits(text: string): Units {
   const field = (k: number): string => text.slice(32 * k, 32 * k + 32).replace(/[\0 ]+$/, '');
   const [mass, length, time, temperature, angle] = [0, 1, 2, 3, 4].map(field) as [
     string,
