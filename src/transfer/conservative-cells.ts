@@ -21,35 +21,45 @@ export interface BodyMesh {
 /** Planes count as plane, and cells as convex, to this share of the face's size. */
 const flatness = 1e-13;
 
-/** Height of a point over the plane of a face, over the length of the area vector. */
-function heightOver(g: MeshGeometry, face: number, xyz: Float64Array, p: number): number {
-  const a = g.faceAreas;
+/** Rounding that the height of a point over a face may carry: of the face's size, and of its coordinates. */
+function heightRounding(g: MeshGeometry, face: number, size: number): number {
   const c = g.faceCentroids;
   const o = 3 * face;
-  return (
-    (a[o]! * (xyz[p]! - c[o]!) + a[o + 1]! * (xyz[p + 1]! - c[o + 1]!) + a[o + 2]! * (xyz[p + 2]! - c[o + 2]!)) /
-    Math.hypot(a[o]!, a[o + 1]!, a[o + 2]!)
-  );
+  const far = Math.abs(c[o]!) + Math.abs(c[o + 1]!) + Math.abs(c[o + 2]!);
+  return Math.max(flatness * Math.sqrt(size), 4e-16 * far);
+}
+
+/**
+ * Largest height of a face's corners over the plane of another (or the same) face, the plane's normal being of length 1.
+ */
+function highest(mesh: CellMesh, face: number, nx: number, ny: number, nz: number, d: number, both: boolean): number {
+  const { points: xyz, faceOffsets, facePoints } = mesh;
+  let top = -Infinity;
+  for (let i = faceOffsets[face]!; i < faceOffsets[face + 1]!; i++) {
+    const p = 3 * facePoints[i]!;
+    let h = nx * xyz[p]! + ny * xyz[p + 1]! + nz * xyz[p + 2]! - d;
+    if (both && h < 0) h = -h;
+    if (h > top) top = h;
+  }
+  return top;
 }
 
 export function bodiesOf(mesh: CellMesh, geometry: MeshGeometry): BodyMesh {
   const { points: xyz, faceOffsets, facePoints, owner, cellFaceOffsets, cellFaces } = mesh;
+  const { faceAreas: area, faceCentroids: centre } = geometry;
   const plane = new Uint8Array(mesh.faceCount);
-  const tolerance = (face: number): number => {
-    const o = 3 * face;
-    const a = geometry.faceAreas;
-    const c = geometry.faceCentroids;
-    // Coordinates carry rounding of their own size.
-    const far = Math.abs(c[o]!) + Math.abs(c[o + 1]!) + Math.abs(c[o + 2]!);
-    return Math.max(flatness * Math.sqrt(Math.hypot(a[o]!, a[o + 1]!, a[o + 2]!)), 4e-16 * far);
-  };
   for (let face = 0; face < mesh.faceCount; face++) {
-    let flat = true;
-    const limit = tolerance(face);
-    if (faceOffsets[face + 1]! - faceOffsets[face]! > 3)
-      for (let i = faceOffsets[face]!; flat && i < faceOffsets[face + 1]!; i++)
-        flat = Math.abs(heightOver(geometry, face, xyz, 3 * facePoints[i]!)) <= limit;
-    plane[face] = flat ? 1 : 0;
+    if (faceOffsets[face + 1]! - faceOffsets[face]! === 3) {
+      plane[face] = 1;
+      continue;
+    }
+    const o = 3 * face;
+    const size = Math.sqrt(area[o]! ** 2 + area[o + 1]! ** 2 + area[o + 2]! ** 2);
+    const nx = area[o]! / size;
+    const ny = area[o + 1]! / size;
+    const nz = area[o + 2]! / size;
+    const d = nx * centre[o]! + ny * centre[o + 1]! + nz * centre[o + 2]!;
+    if (highest(mesh, face, nx, ny, nz, d, true) <= heightRounding(geometry, face, size)) plane[face] = 1;
   }
   const convex = new Uint8Array(mesh.cellCount);
   for (let cell = 0; cell < mesh.cellCount; cell++) {
@@ -59,14 +69,16 @@ export function bodiesOf(mesh: CellMesh, geometry: MeshGeometry): BodyMesh {
     for (let j = begin; good && j < end; j++) good = plane[cellFaces[j]!] === 1;
     for (let j = begin; good && j < end; j++) {
       const face = cellFaces[j]!;
-      const sign = owner[face] === cell ? 1 : -1;
-      const limit = tolerance(face);
-      for (let m = begin; good && m < end; m++) {
-        const other = cellFaces[m]!;
-        if (other === face) continue;
-        for (let i = faceOffsets[other]!; good && i < faceOffsets[other + 1]!; i++)
-          good = sign * heightOver(geometry, face, xyz, 3 * facePoints[i]!) <= limit;
-      }
+      const o = 3 * face;
+      const size = Math.sqrt(area[o]! ** 2 + area[o + 1]! ** 2 + area[o + 2]! ** 2);
+      const sign = (owner[face] === cell ? 1 : -1) / size;
+      const nx = sign * area[o]!;
+      const ny = sign * area[o + 1]!;
+      const nz = sign * area[o + 2]!;
+      const d = nx * centre[o]! + ny * centre[o + 1]! + nz * centre[o + 2]!;
+      const limit = heightRounding(geometry, face, size);
+      for (let m = begin; good && m < end; m++)
+        if (m !== j) good = highest(mesh, cellFaces[m]!, nx, ny, nz, d, false) <= limit;
     }
     convex[cell] = good ? 1 : 0;
   }

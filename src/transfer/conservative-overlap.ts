@@ -13,8 +13,21 @@ const planes = createHalfSpaces();
 const tetrahedron = new Float64Array(12);
 const box = new Float64Array(6);
 
+/** True when nothing of `whole` lies within a half-space: cheaper to know before the first cut. */
+function allBeyond(p: number): boolean {
+  const { vertices, vertexCount } = whole;
+  const nx = planes.planes[4 * p]!;
+  const ny = planes.planes[4 * p + 1]!;
+  const nz = planes.planes[4 * p + 2]!;
+  const d = planes.planes[4 * p + 3]!;
+  for (let v = 0; v < 3 * vertexCount; v += 3)
+    if (nx * vertices[v]! + ny * vertices[v + 1]! + nz * vertices[v + 2]! <= d) return false;
+  return true;
+}
+
 /** Cuts `whole` by the half-spaces and adds what is left. */
 function addCut(sign: number, sum: Float64Array): void {
+  for (let p = 0; p < planes.count; p++) if (allBeyond(p)) return;
   let current = whole;
   let next = 0;
   for (let p = 0; p < planes.count; p++) {
