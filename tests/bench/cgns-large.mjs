@@ -64,11 +64,12 @@ async function run() {
     syncFile(mesh);
     return { seconds: (performance.now() - begin) / 1000, bytes: statSync(mesh).size };
   }
-  if (step === 'read') {
+  if (step === 'read' || step === 'read-copy') {
+    const path = step === 'read' ? mesh : start;
     const begin = performance.now();
-    const dataset = await readCgns(mesh);
+    const dataset = await readCgns(path);
     for (const array of dataset.cellArrays) array.load();
-    return { seconds: (performance.now() - begin) / 1000, bytes: statSync(mesh).size };
+    return { seconds: (performance.now() - begin) / 1000, bytes: statSync(path).size };
   }
   if (step === 'copy') {
     const dataset = await readCgns(mesh);
@@ -110,7 +111,7 @@ if (step !== undefined) {
   try {
     console.log(`${side}^3 = ${cells} hexahedra`);
     let bytes = 0;
-    for (const name of ['new', 'plain-write', 'read', 'plain-read', 'copy']) {
+    for (const name of ['new', 'plain-write', 'read', 'plain-read', 'copy', 'read-copy']) {
       const self = fileURLToPath(import.meta.url);
       const child = spawnSync(process.execPath, [self, side, library, name, place, bytes].map(String), {
         encoding: 'utf8',
