@@ -31,6 +31,8 @@ export interface AppraisalInput extends TurbulenceOnCells {
   /** 3 x cells, mean velocity, m/s; without it no run plan, walls or monitors. */
   readonly velocity?: Float64Array;
   readonly wallFaces?: Int32Array;
+  /** m: how deep the precursor's first values lie, see `precursorDepth`; default: the first cell's own depth. */
+  readonly wallSamplingDistance?: number;
   /** cells, number of each cell's zone, and the zones' names. */
   readonly zones?: { readonly names: readonly string[]; readonly of: Int32Array };
   /** A second precursor on the same cells. */
@@ -126,7 +128,7 @@ function ratioRange(all: readonly ResolutionFields[]): readonly [number, number]
 function judgeWalls(input: AppraisalInput): WallAppraisal | undefined {
   const { wallFaces, velocity, nu } = input;
   if (wallFaces === undefined || wallFaces.length === 0 || velocity === undefined || nu === undefined) return undefined;
-  const spacings = appraiseWalls(input.mesh, input.geometry, wallFaces, velocity, nu);
+  const spacings = appraiseWalls(input.mesh, input.geometry, wallFaces, velocity, nu, input.wallSamplingDistance);
   const pair = (values: Float64Array): readonly [number, number] => [
     weightedQuantile(values, spacings.areas, 0.5),
     weightedQuantile(values, spacings.areas, 0.95),

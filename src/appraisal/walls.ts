@@ -1,4 +1,6 @@
 import type { CellMesh, MeshGeometry } from '../mesh/cell-mesh.js';
+import { buildKdTree, createKdSearch, nearestNeighbours } from '../spatial/kd-tree.js';
+import { quantiles } from './histogram.js';
 
 /** Skin-friction coefficients, 2 tau_w / (rho U^2). */
 export const skinFriction = {
@@ -70,12 +72,108 @@ function widthAlong(tensors: Float64Array, cell: number, x: number, y: number, z
   );
 }
 
+/** Distance of a cell's centre from the plane of a face, along the inward normal, m. */
+function depth(geometry: MeshGeometry, cell: number, face: number, normal: readonly number[]): number {
+  let distance = 0;
+  for (let a = 0; a < 3; a++) {
+    distance +=
+      (normal[a] as number) *
+      ((geometry.faceCentroids[3 * face + a] as number) - (geometry.cellCentroids[3 * cell + a] as number));
+  }
+  return distance;
+}
+
+const mostSteps = 400;
+
+/** Walks from cell to cell away from the wall until a centre lies at least `wanted` deep. */
+function cellAtDepth(
+  mesh: CellMesh,
+  geometry: MeshGeometry,
+  face: number,
+  normal: readonly number[],
+  wanted: number,
+): number {
+  let cell = mesh.owner[face] as number;
+  let reached = depth(geometry, cell, face, normal);
+  for (let step = 0; step < mostSteps && reached < wanted; step++) {
+    let best = -1;
+    let bestSlant = 0.3;
+    for (let i = mesh.cellFaceOffsets[cell] as number; i < (mesh.cellFaceOffsets[cell + 1] as number); i++) {
+      const f = mesh.cellFaces[i] as number;
+      if (f >= mesh.innerFaceCount) continue;
+      const other = (mesh.owner[f] === cell ? mesh.neighbour[f] : mesh.owner[f]) as number;
+      const gain = depth(geometry, other, face, normal) - reached;
+      const length = Math.hypot(
+        ...[0, 1, 2].map(
+          (a) => (geometry.cellCentroids[3 * other + a] as number) - (geometry.cellCentroids[3 * cell + a] as number),
+        ),
+      );
+      // The neighbour that lies straightest above.
+      if (gain / length > bestSlant) {
+        best = other;
+        bestSlant = gain / length;
+      }
+    }
+    if (best < 0) break;
+    cell = best;
+    reached = depth(geometry, cell, face, normal);
+  }
+  return cell;
+}
+
 /**
- * Spacings next to walls in wall units. The friction velocity comes from the transferred velocity at the first cell
- * centre through Spalding's wall law, so it holds whether that cell lies in the sublayer or in the log layer.
+ * How far from the wall the precursor has its first moving values: the median over the wall faces of the depth of the
+ * nearest precursor point whose speed is above a thousandth of the largest.
+ *
+ * @param points  3 x m, metres
+ * @param velocity  3 x m, m/s
+ * @param constantAxes  axes (0 x, 1 y, 2 z) along which the precursor is constant
+ * @returns metres; 0 when nothing moves
+ */
+export function precursorDepth(
+  geometry: MeshGeometry,
+  wallFaces: Int32Array,
+  points: Float64Array,
+  velocity: Float64Array,
+  constantAxes: readonly number[] = [],
+): number {
+  const speeds = Float64Array.from({ length: points.length / 3 }, (_, i) =>
+    Math.hypot(velocity[3 * i] as number, velocity[3 * i + 1] as number, velocity[3 * i + 2] as number),
+  );
+  const floor = 1e-3 * speeds.reduce((a, b) => Math.max(a, b), 0);
+  const moving: number[] = [];
+  speeds.forEach((speed, i) => {
+    if (speed <= floor) return;
+    for (let a = 0; a < 3; a++) moving.push(constantAxes.includes(a) ? 0 : (points[3 * i + a] as number));
+  });
+  if (moving.length === 0 || wallFaces.length === 0) return 0;
+  const places = Float64Array.from(moving);
+  const tree = buildKdTree(places);
+  const search = createKdSearch();
+  const index = new Int32Array(1);
+  const squared = new Float64Array(1);
+  const depths = Float64Array.from(wallFaces, (face) => {
+    const at = [0, 1, 2].map((a) => (constantAxes.includes(a) ? 0 : (geometry.faceCentroids[3 * face + a] as number)));
+    nearestNeighbours(tree, at[0] as number, at[1] as number, at[2] as number, 1, index, squared, search);
+    const area = Math.hypot(...geometry.faceAreas.subarray(3 * face, 3 * face + 3));
+    let sum = 0;
+    for (let a = 0; a < 3; a++) {
+      const normal = (geometry.faceAreas[3 * face + a] as number) / area;
+      sum += normal * ((at[a] as number) - (places[3 * (index[0] as number) + a] as number));
+    }
+    return Math.abs(sum);
+  });
+  return quantiles(depths, [0.5])[0] as number;
+}
+
+/**
+ * Spacings next to walls in wall units. The friction velocity comes from the transferred velocity through Spalding's wall
+ * law, which holds in the sublayer and in the log layer alike. It is read where the precursor has values of its own: in
+ * the first cell whose centre is `samplingDistance` away from the wall, not closer, where a finer target only interpolates.
  *
  * @param velocity  3 x cells, m/s
  * @param nu  m2/s, one number or one a cell
+ * @param samplingDistance  m; 0 reads in the first cell
  */
 export function appraiseWalls(
   mesh: CellMesh,
@@ -83,6 +181,7 @@ export function appraiseWalls(
   wallFaces: Int32Array,
   velocity: Float64Array,
   nu: number | Float64Array,
+  samplingDistance = 0,
 ): WallSpacings {
   const n = wallFaces.length;
   const yPlus = new Float64Array(n);
@@ -94,25 +193,18 @@ export function appraiseWalls(
     const face = wallFaces[i] as number;
     const cell = mesh.owner[face] as number;
     const f = 3 * face;
-    const c = 3 * cell;
     const area = Math.hypot(
       geometry.faceAreas[f] as number,
       geometry.faceAreas[f + 1] as number,
       geometry.faceAreas[f + 2] as number,
     );
     const normal = [0, 1, 2].map((a) => (geometry.faceAreas[f + a] as number) / area) as [number, number, number];
-    let distance = 0;
-    let through = 0;
-    for (let a = 0; a < 3; a++) {
-      distance +=
-        (normal[a] as number) * ((geometry.faceCentroids[f + a] as number) - (geometry.cellCentroids[c + a] as number));
-      through += (normal[a] as number) * (velocity[c + a] as number);
-    }
-    let along = [0, 1, 2].map((a) => (velocity[c + a] as number) - through * (normal[a] as number)) as [
-      number,
-      number,
-      number,
-    ];
+    const distance = depth(geometry, cell, face, normal);
+    const sample = cellAtDepth(mesh, geometry, face, normal, samplingDistance);
+    const sampleDistance = depth(geometry, sample, face, normal);
+    const flow = [0, 1, 2].map((a) => velocity[3 * sample + a] as number) as [number, number, number];
+    const through = normal[0] * flow[0] + normal[1] * flow[1] + normal[2] * flow[2];
+    let along = flow.map((u, a) => u - through * (normal[a] as number)) as [number, number, number];
     const speed = Math.hypot(...along);
     if (speed > 0) along = along.map((x) => x / speed) as [number, number, number];
     else {
@@ -128,7 +220,7 @@ export function appraiseWalls(
       normal[0] * along[1] - normal[1] * along[0],
     ];
     const viscosity = typeof nu === 'number' ? nu : (nu[cell] as number);
-    const friction = frictionFromWallLaw(speed, Math.abs(distance), viscosity);
+    const friction = frictionFromWallLaw(speed, Math.abs(sampleDistance), viscosity);
     const unit = friction / viscosity;
     frictionSpeed[i] = friction;
     yPlus[i] = Math.abs(distance) * unit;

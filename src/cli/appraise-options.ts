@@ -27,7 +27,8 @@ export interface AppraiseOptions extends CommonOptions {
   readonly intensity?: number;
   readonly length?: number;
   readonly method: 'linear' | 'inverse-distance' | 'nearest' | 'conservative';
-  readonly outside: 'nearest' | 'fail' | number;
+  readonly outside: 'nearest' | 'extrapolate' | 'fail' | number;
+  readonly extrude?: 'x' | 'y' | 'z';
   readonly courantMax: number;
   readonly courantP99: number;
   readonly meanError: number;
@@ -107,10 +108,10 @@ function shareOf(text: string): number {
 }
 
 function outsideOf(text: string): AppraiseOptions['outside'] {
-  if (text === 'nearest' || text === 'fail') return text;
+  if (text === 'nearest' || text === 'extrapolate' || text === 'fail') return text;
   const value = Number(text);
   if (text.trim() === '' || !Number.isFinite(value)) {
-    throw new InvalidArgumentError(`'${text}' is none of nearest, fail or a number.`);
+    throw new InvalidArgumentError(`'${text}' is none of nearest, extrapolate, fail or a number.`);
   }
   return value;
 }
@@ -157,9 +158,14 @@ export function withAppraiseOptions(command: Command): Command {
         .default('linear'),
     )
     .addOption(
-      option('--outside <rule>', 'cells outside the precursor: nearest, fail or a number', outsideOf).default(
-        'nearest',
-      ),
+      option(
+        '--outside <rule>',
+        'cells outside the precursor: nearest, extrapolate, fail or a number',
+        outsideOf,
+      ).default('nearest'),
+    )
+    .addOption(
+      new Option('--extrude <axis>', 'the precursor is a section, constant along this axis').choices(['x', 'y', 'z']),
     )
     .addOption(
       option('--courant-max <number>', 'largest Courant number of the planned time step', positiveNumber).default(0.8),

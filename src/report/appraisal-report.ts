@@ -173,7 +173,7 @@ export function appraisalReport(data: AppraisalReportData): ReportPage {
             row('along the flow', wall.along, '50 to 100'),
             row('across the flow', wall.across, '15 to 30'),
           ],
-          note: "Friction velocity from the transferred velocity at the first cell centre through Spalding's wall law (1961). Practice: Piomelli & Chasnov 1996 (from memory).",
+          note: "Friction velocity from the transferred velocity where the precursor has its first values, through Spalding's wall law (1961). Practice: Piomelli & Chasnov 1996 (from memory).",
         },
         histogramChart(
           'y+ of the first cell centre',

@@ -8,6 +8,7 @@ import {
   frictionFromWallLaw,
   frictionVelocity,
   heightForYPlus,
+  precursorDepth,
   skinFriction,
   wallVerdict,
 } from '../../src/appraisal/walls.js';
@@ -160,6 +161,26 @@ describe('walls', () => {
     }
     const walls = appraiseWalls(mesh, geometry, Int32Array.from(faces), velocity, nu);
     expect(walls.yPlus.length).toBe(100);
+    // A coarser precursor that has no values below y+ = 20 and is interpolated to zero from there: read at that depth,
+    // u_tau comes out right (U+ = 12.03 at y+ = 20, same data), read in the first cell it is far too small.
+    const coarse = velocity.slice();
+    for (let i = 0; i < mesh.cellCount; i++) {
+      const plus = (geometry.cellCentroids[3 * i + 1] as number) / nu;
+      coarse[3 * i] = plus < 20 ? (plus * 12.03) / 20 : 2.44 * Math.log(plus) + 4.72;
+    }
+    const onWall = Int32Array.from(faces);
+    expect(appraiseWalls(mesh, geometry, onWall, coarse, nu).frictionSpeed[7]).toBeLessThan(0.8);
+    const depth = precursorDepth(
+      geometry,
+      onWall,
+      Float64Array.from([0.5, 0, 0.2, 0.5, 20 * nu, 0.2, 0.5, 0.4, 0.2]),
+      Float64Array.from([0, 0, 0, 12, 0, 0, 17, 0, 0]),
+      [0, 2],
+    );
+    expect(depth).toBeCloseTo(20 * nu, 12);
+    const read = appraiseWalls(mesh, geometry, onWall, coarse, nu, depth);
+    expect(Math.abs((read.frictionSpeed[7] as number) - 1)).toBeLessThan(0.04);
+    expect(Math.abs((read.yPlus[7] as number) / 1.18 - 1)).toBeLessThan(0.04);
     expect(Math.abs((walls.yPlus[7] as number) / 1.18 - 1)).toBeLessThan(0.01);
     expect(Math.abs((walls.alongPlus[7] as number) / 59 - 1)).toBeLessThan(0.01);
     expect(Math.abs((walls.acrossPlus[7] as number) / 29.5 - 1)).toBeLessThan(0.01);
