@@ -4,7 +4,9 @@ import { resolvedShare, shareModel, vonKarmanShare, waveForShare } from '../../d
 const karman = shareModel('von-karman-pao');
 const pope = shareModel('pope');
 const three = (x) => x.toFixed(3);
-console.log('| GridRatio | von Karman | Pope | von Karman-Pao, L / eta = 1000 | L / eta = 100 | von Karman with L11 / CellWidth |');
+console.log(
+  '| GridRatio | von Karman | Pope | von Karman-Pao, L / eta = 1000 | L / eta = 100 | von Karman with L11 / CellWidth |',
+);
 console.log('| --- | --- | --- | --- | --- | --- |');
 for (const ratio of [1, 2, 3, 5, 8, 10, 12, 16, 20, 32]) {
   const wave = Math.PI * ratio;
