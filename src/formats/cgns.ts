@@ -1,4 +1,5 @@
 import type { Dataset, Format, WriteRequest } from '../basis/dataset.js';
+import { MachineError } from '../basis/errors.js';
 import { writeBeside } from '../basis/half-written.js';
 import type { CgnsFaceArray } from './cgns/face-solutions.js';
 import type { CgnsReadOptions } from './cgns/read.js';
@@ -48,8 +49,14 @@ export async function writeCgns(path: string, request: WriteRequest, faces?: Fac
   const { writeCopy } = await import('./cgns/write-copy.js');
   const { writeNew } = await import('./cgns/write-new.js');
   await writeBeside(path, (temporary) => {
-    if (request.mesh.format === 'cgns') writeCopy(temporary, path, request, faces);
-    else writeNew(temporary, request, faces);
+    try {
+      if (request.mesh.format === 'cgns') writeCopy(temporary, path, request, faces);
+      else writeNew(temporary, request, faces);
+    } catch (error) {
+      // The user knows the final name only.
+      if (error instanceof MachineError) throw new MachineError({ ...error.details, file: path });
+      throw error;
+    }
   });
 }
 

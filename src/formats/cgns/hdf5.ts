@@ -45,6 +45,8 @@ export function damaged(path: string, place: string, error: unknown): Error {
   if (error instanceof RangeError && /array length|allocation/i.test(error.message)) {
     return new MachineError({ file: path, place, cause: 'there is not enough memory to read it' });
   }
+  const { syscall, code } = (error ?? {}) as NodeJS.ErrnoException;
+  if (syscall !== undefined) return new MachineError({ file: path, place, cause: `the system refused (${code})` });
   const result = new InputError({
     file: path,
     place,
@@ -112,6 +114,33 @@ export function closeHdf5(file: Hdf5File): void {
   } catch {
     // A damaged file may fail to close; the error that matters was raised before.
   }
+}
+
+/**
+ * Closes a file that was written and makes sure that all of it has reached the disk: the binding's own calls do not
+ * tell of every failed write, but a file that is shorter than it says cannot be opened again.
+ *
+ * @throws MachineError
+ */
+export function finishHdf5(file: Hdf5File): void {
+  const flushed = Module.flush(file.id) >= 0;
+  const closed = Module.close_file(file.id) >= 0;
+  const again = flushed && closed ? Module.open(file.path, Module.H5F_ACC_RDONLY, false, -1, -1) : -1n;
+  if (again < 0n) throw new MachineError({ file: file.path, cause: 'writing failed, the disk may be full' });
+  Module.close_file(again);
+}
+
+/** Writes by `use` and closes; a failure in between closes as well. */
+export function writeHdf5<T>(file: Hdf5File, use: () => T): T {
+  let result: T;
+  try {
+    result = use();
+  } catch (error) {
+    closeHdf5(file);
+    throw error;
+  }
+  finishHdf5(file);
+  return result;
 }
 
 /** Names of a group's links, in order of creation where the file keeps it. */

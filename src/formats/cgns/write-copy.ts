@@ -2,7 +2,7 @@ import { chmodSync, constants, copyFileSync, statSync } from 'node:fs';
 import { dirname, isAbsolute, relative, resolve } from 'node:path';
 import type { WriteRequest } from '../../basis/dataset.js';
 import { InputError } from '../../basis/errors.js';
-import { closeHdf5, createHdf5, damaged, type Hdf5File, openHdf5, readPieces } from './hdf5.js';
+import { createHdf5, damaged, type Hdf5File, openHdf5, readPieces, writeHdf5 } from './hdf5.js';
 import { type RaggedSection, readSections } from './sections.js';
 import { type CgnsNode, type CgnsSession, childrenOf, openSession, readText, readTree } from './tree.js';
 import { type FaceFields, writeFaceFields } from './write-faces.js';
@@ -116,15 +116,13 @@ function copyTree(
 ): void {
   const onWay = new Set(zones.flatMap(({ base, node }) => [base, node]));
   const out = createHdf5(temporary);
-  try {
+  writeHdf5(out, () => {
     createRoot(out);
     const copy: Copy = { session, out, to, source: tree.file };
     for (const child of tree.children) {
       if (child.label !== 'CGNSLibraryVersion_t') copyNode(copy, '/', child, onWay, tree.file);
     }
-  } finally {
-    closeHdf5(out);
-  }
+  });
 }
 
 function freeName(wanted: string, zones: readonly ZoneInfo[]): string {
@@ -198,7 +196,7 @@ export function writeCopy(temporary: string, to: string, request: WriteRequest, 
     session.close();
   }
   const out = openHdf5(temporary, 'append');
-  try {
+  writeHdf5(out, () => {
     const cells = request.cellArrays.filter((array) => array.tuples > 0);
     const points = request.pointArrays.filter((array) => array.tuples > 0);
     const filled = cellPlaces.filter(({ count }) => count > 0);
@@ -206,7 +204,5 @@ export function writeCopy(temporary: string, to: string, request: WriteRequest, 
     if (points.length > 0) writeSolutions(out, freeName(POINTS, zones), 'Vertex', pointPlaces, points);
     if (faces !== undefined) writeFaceFields(out, faceSections, mesh, faces, (name) => freeName(name, zones));
     writeNotes(out, base, request.notes, present);
-  } finally {
-    closeHdf5(out);
-  }
+  });
 }

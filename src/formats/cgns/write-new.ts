@@ -5,7 +5,7 @@ import type { CellMesh } from '../../mesh/cell-mesh.js';
 import { cellShape } from '../../mesh/cell-types.js';
 import { pointCounts } from '../../mesh/structured.js';
 import { NFACE, NGON } from './elements.js';
-import { closeHdf5, createHdf5, type Hdf5File } from './hdf5.js';
+import { createHdf5, type Hdf5File, writeHdf5 } from './hdf5.js';
 import { type FaceFields, writeFaceFields } from './write-faces.js';
 import { createNode, createRoot, type NodeData, wholeData } from './write-node.js';
 import { componentNames, shortName, writeNotes, writeSiUnits, writeSolutions } from './write-solution.js';
@@ -156,7 +156,7 @@ export function writeNew(temporary: string, request: WriteRequest, faces?: FaceF
     });
   }
   const file = createHdf5(temporary);
-  try {
+  writeHdf5(file, () => {
     createRoot(file);
     const base = createNode(file, '/', 'Base', 'CGNSBase_t', wholeData('I4', [2], [dimension, 3]));
     writeSiUnits(file, base);
@@ -192,7 +192,5 @@ export function writeNew(temporary: string, request: WriteRequest, faces?: FaceF
     const notes = new Map([...dataset.notes, ...request.notes]);
     const zoneNames = written.map(({ path }) => [path.slice(path.lastIndexOf('/') + 1), ''] as const);
     writeNotes(file, base, notes, new Map(zoneNames));
-  } finally {
-    closeHdf5(file);
-  }
+  });
 }
