@@ -44,16 +44,6 @@ export function reserveSurface(s: Surface, vertices: number, faces: number, rims
   }
 }
 
-export function copySurface(from: Surface, to: Surface): void {
-  const rims = from.starts[from.faceCount]!;
-  reserveSurface(to, from.vertexCount, from.faceCount, rims);
-  to.vertexCount = from.vertexCount;
-  to.faceCount = from.faceCount;
-  for (let i = 0; i < 3 * from.vertexCount; i++) to.vertices[i] = from.vertices[i]!;
-  for (let i = 0; i <= from.faceCount; i++) to.starts[i] = from.starts[i]!;
-  for (let i = 0; i < rims; i++) to.rims[i] = from.rims[i]!;
-}
-
 let height = new Float64Array(256);
 let kept = new Int32Array(256);
 let edgeIn = new Int32Array(64);

@@ -5,7 +5,7 @@ import {
   createHalfSpaces,
   tetrahedronHalfSpaces,
 } from './conservative-cells.js';
-import { addMoments, copySurface, createSurface, cutSurface, type Surface } from './conservative-clip.js';
+import { addMoments, createSurface, cutSurface, type Surface } from './conservative-clip.js';
 
 const whole = createSurface();
 const pieces: [Surface, Surface] = [createSurface(), createSurface()];
@@ -140,14 +140,4 @@ function addTetrahedra(b: BodyMesh, cell: number, ox: number, oy: number, oz: nu
       cutOne();
     }
   }
-}
-
-/** Volume that a convex or other cell has as cut here; for tests. */
-export function bodyVolume(b: BodyMesh, cell: number): number {
-  const sum = new Float64Array(4);
-  const c = b.cellCentroids;
-  cellSurface(b, cell, c[3 * cell]!, c[3 * cell + 1]!, c[3 * cell + 2]!, whole);
-  copySurface(whole, pieces[0]);
-  addMoments(pieces[0], 1, sum);
-  return sum[0]!;
 }
