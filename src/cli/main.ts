@@ -1,7 +1,7 @@
-import { readFileSync } from 'node:fs';
 import { Command, CommanderError } from 'commander';
 import { InputError, MachineError } from '../basis/errors.js';
 import { removeHalfWritten } from '../basis/half-written.js';
+import { packageVersion } from './version.js';
 
 /** Exit codes of every command. */
 export const exitCodes = { done: 0, checkFailed: 1, badInput: 2, machineRefused: 3, interrupted: 130 } as const;
@@ -45,11 +45,6 @@ function sentenceOf(error: unknown): { text: string; code: number } {
     };
   }
   return { text: `Internal fault: ${String(error)}.`, code: exitCodes.machineRefused };
-}
-
-export function packageVersion(): string {
-  const text = readFileSync(new URL('../../package.json', import.meta.url), 'utf8');
-  return (JSON.parse(text) as { version: string }).version;
 }
 
 async function buildProgram(): Promise<Command> {

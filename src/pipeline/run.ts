@@ -114,9 +114,10 @@ interface Start {
   readonly audit: AuditFigures;
 }
 
-function finishStart(
+/** The fields of the start and their audit. */
+export function finishStart(
   target: Target,
-  transferred: Transferred,
+  transferred: Pick<Transferred, 'fields' | 'outside'>,
   fluctuations: FluctuationResult | undefined,
   controlled: Controlled | undefined,
   timeStep: number | undefined,

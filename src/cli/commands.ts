@@ -1,0 +1,19 @@
+import type { Command } from 'commander';
+import { addAudit } from './audit.js';
+import { addDescribe } from './describe.js';
+import { addFluctuate } from './fluctuate.js';
+import { addFollowup } from './followup.js';
+import { addInit } from './init.js';
+import { addRun } from './run.js';
+import { addTransfer } from './transfer.js';
+
+/** Every command, in the order in which --help lists them. */
+export function addCommands(program: Command): void {
+  addRun(program);
+  addTransfer(program);
+  addFluctuate(program);
+  addAudit(program);
+  addFollowup(program);
+  addDescribe(program);
+  addInit(program);
+}
