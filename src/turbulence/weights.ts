@@ -6,8 +6,10 @@ import { multipliersOf, smallestShare } from './polarisation.js';
 import { type ShellShare, shellShare } from './shell-table.js';
 import { composeSymmetric, eigenSymmetric } from './symmetric.js';
 
-/** Passes over the mode set that correct the multipliers for its finite number of directions. */
-const corrections = 3;
+/** Passes over the mode set (after the first look) that correct the multipliers for its finite number of directions. */
+const corrections = 1;
+/** Shells with less than this share of k do not count while the multipliers are corrected. */
+const coarsely = 1e-3;
 /** Seeded energy is raised by at most this to make up for waves between the two cut-offs. */
 const largestRaise = 4;
 /** Cells to the shortest wave that a run resolves. */
@@ -50,8 +52,44 @@ function setMultipliers(plan: FluctuationPlan, tensor: Float64Array, parameters:
   composeSymmetric(multipliers, vectors, parameters, at);
 }
 
+/**
+ * Energy of one mode of a shell into the row `weight`; computed in the first pass over a block, kept for the others.
+ *
+ * @returns false when the shell holds less than `least` of k everywhere in the block
+ */
+function setShares(
+  plan: FluctuationPlan,
+  block: Block,
+  shell: number,
+  shares: Float64Array,
+  first: boolean,
+  row: Float32Array | Float64Array,
+  least: number,
+): boolean {
+  const at = shell * blockPoints;
+  let most = 0;
+  for (let i = 0; i < block.points; i++) {
+    if (first) {
+      shellShare(plan.shellTable, block.spectra[i]!, shell, share);
+      shares[at + i] = share.share;
+    }
+    const e = shares[at + i]!;
+    row[i] = e / plan.modes.directions;
+    if (e > most) most = e;
+  }
+  return most >= least;
+}
+
 /** Seeded and resolvable energy, and second moments with the multipliers, of the block's points for k = 1. */
-function sumMoments(plan: FluctuationPlan, kernel: ModeKernel, block: Block, stress: boolean): void {
+function sumMoments(
+  plan: FluctuationPlan,
+  kernel: ModeKernel,
+  block: Block,
+  stress: boolean,
+  shares: Float64Array,
+  least: number,
+): void {
+  const first = !stress;
   const { directions, shells } = plan.modes;
   const seededScale = (plan.wavelengthCells / (2 * Math.PI)) ** 2;
   const ratio = (Math.min(resolvableCells, plan.wavelengthCells) / plan.wavelengthCells) ** 2;
@@ -64,13 +102,7 @@ function sumMoments(plan: FluctuationPlan, kernel: ModeKernel, block: Block, str
     const highest = block.widest * plan.modes.longest[s]! ** 2 * seededScale;
     const lowest = block.narrowest * plan.modes.shortest[s]! ** 2 * seededScale;
     if (lowest * ratio >= 1 + fade) continue;
-    let most = 0;
-    for (let i = 0; i < block.points; i++) {
-      shellShare(plan.shellTable, block.spectra[i]!, s, share);
-      w[i] = share.share / directions;
-      if (share.share > most) most = share.share;
-    }
-    if (most < 1e-12) continue;
+    if (!setShares(plan, block, s, shares, first, w, least)) continue;
     const whole = highest <= 1 - 2 * fade && highest * ratio <= 1 - fade;
     const flags = (whole ? 0 : shaped.cut) | (stress ? shaped.stress : 0);
     kernel.moments(block.points, s * directions, directions, flags, plan.taper, ratio);
@@ -91,6 +123,7 @@ export function weighRange(plan: FluctuationPlan, begin: number, end: number): v
   const targets = new Float64Array(6 * blockPoints);
   const aims = new Float64Array(6 * blockPoints);
   const tensor = new Float64Array(6);
+  const shares = new Float64Array(plan.modes.shells * blockPoints);
   for (let first = begin; first < end; first += blockPoints) {
     const points = Math.min(blockPoints, end - first);
     loadCells(plan, block, first, points, false);
@@ -108,12 +141,12 @@ export function weighRange(plan: FluctuationPlan, begin: number, end: number): v
         setMultipliers(plan, tensor, block.parameters, i * columns + column.polarisation);
       }
     }
-    sumMoments(plan, kernel, block, false);
+    sumMoments(plan, kernel, block, false, shares, 1e-12);
     const seeded = kernel.rows[rows.moments]!;
     const isotropic = Float64Array.from(seeded);
     const resolvable = Float64Array.from(kernel.rows[rows.moments + 1]!);
     if (covariance !== undefined) {
-      sumMoments(plan, kernel, block, true);
+      sumMoments(plan, kernel, block, true, shares, corrections > 0 ? coarsely : 1e-12);
       for (let pass = 0; pass < corrections; pass++) {
         for (let i = 0; i < points; i++) {
           if (!(seeded[i]! > 1e-20)) continue;
@@ -125,7 +158,7 @@ export function weighRange(plan: FluctuationPlan, begin: number, end: number): v
           aims.set(tensor, 6 * i);
           setMultipliers(plan, tensor, block.parameters, i * columns + column.polarisation);
         }
-        sumMoments(plan, kernel, block, true);
+        sumMoments(plan, kernel, block, true, shares, pass < corrections - 1 ? coarsely : 1e-12);
       }
     }
     for (let i = 0; i < points; i++) {

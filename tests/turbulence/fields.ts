@@ -1,5 +1,5 @@
-import type { CellMesh, MeshGeometry, PeriodicPairs } from '../../src/mesh/cell-mesh.js';
 import { buildMesh } from '../../src/mesh/build.js';
+import type { CellMesh, MeshGeometry, PeriodicPairs } from '../../src/mesh/cell-mesh.js';
 import { measureMesh } from '../../src/mesh/geometry.js';
 import { matchPeriodic } from '../../src/mesh/periodic.js';
 import type { FluctuationPlan } from '../../src/turbulence/plan.js';
@@ -59,5 +59,4 @@ export function covarianceOf(
   return out.map((v) => v / volume);
 }
 
-export const energyOf = (covariance: Float64Array): number =>
-  0.5 * (covariance[0]! + covariance[3]! + covariance[5]!);
+export const energyOf = (covariance: Float64Array): number => 0.5 * (covariance[0]! + covariance[3]! + covariance[5]!);
