@@ -26,7 +26,7 @@ export function boundsOf(points: Float64Array): { low: [number, number, number];
 
 /**
  * Cuts the bounding box of the cell centres into boxes of about equal sides and lists those that miss most of the wanted
- * energy, worst first. Boxes that reach the wanted share in every cell are not listed.
+ * energy, worst first. Boxes that reach the wanted share in the energy-weighted mean are not listed.
  *
  * @param centroids  3 x n, metres
  * @param divisions  boxes along the longest side
@@ -66,9 +66,12 @@ export function worstRegions(
   }
   const order = Array.from(deficit.keys())
     .filter((box) => (deficit[box] as number) > 0)
-    .sort((a, b) => (deficit[b] as number) - (deficit[a] as number) || a - b)
-    .slice(0, count);
-  return order.map((box) => {
+    .sort((a, b) => (deficit[b] as number) - (deficit[a] as number) || a - b);
+  const regions: Region[] = [];
+  for (const box of order) {
+    if (regions.length >= count) break;
+    const summary = summariseResolution(input, fields, boxOf, box);
+    if (summary.meanShare >= wanted) continue;
     const index = [
       box % (parts[0] as number),
       Math.floor(box / (parts[0] as number)) % (parts[1] as number),
@@ -78,11 +81,7 @@ export function worstRegions(
       [0, 1, 2].map(
         (a) => (low[a] as number) + (((index[a] as number) + shift) * (sides[a] as number)) / (parts[a] as number),
       ) as [number, number, number];
-    return {
-      low: corner(0),
-      high: corner(1),
-      deficitShare: (deficit[box] as number) / total,
-      summary: summariseResolution(input, fields, boxOf, box),
-    };
-  });
+    regions.push({ low: corner(0), high: corner(1), deficitShare: (deficit[box] as number) / total, summary });
+  }
+  return regions;
 }

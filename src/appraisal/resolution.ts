@@ -14,7 +14,11 @@ export interface ResolutionInput {
   /** Share of k that the run is wanted to resolve, default 0.8 (Pope 2000, section 13.5). */
   readonly wantedShare?: number;
   readonly spectrum?: ShareSpectrum;
-  /** Cells whose k is below this part of the largest k count as quiet: no turbulence to be resolved. Default 1e-3. */
+  /**
+   * Cells whose k is below this part of the largest k count as quiet: no turbulence to be resolved. Default 1e-3. So do
+   * cells whose own length falls away next to a wall (k goes to zero there, epsilon does not): L below 10 Kolmogorov lengths,
+   * the viscous sublayer (y+ of about 5), or without viscosity L below a fiftieth of the energy-weighted mean.
+   */
   readonly quietBelow?: number;
 }
 
@@ -40,6 +44,24 @@ export interface ResolutionFields {
 /** Limits of GridRatio in words: common practice, no source. */
 export const gridRatioMarginal = 5;
 export const gridRatioGood = 10;
+
+const sublayerLengths = 10;
+const sublayerShare = 1 / 50;
+
+/** Energy-weighted mean of L. */
+function meanLengthOf(input: ResolutionInput): number {
+  let sum = 0;
+  let energy = 0;
+  for (let i = 0; i < input.volumes.length; i++) {
+    const k = input.k[i] as number;
+    const epsilon = input.epsilon[i] as number;
+    if (!(k > 0 && epsilon > 0)) continue;
+    const weight = k * (input.volumes[i] as number);
+    sum += (weight * k ** 1.5) / epsilon;
+    energy += weight;
+  }
+  return energy > 0 ? sum / energy : 0;
+}
 
 function requireFinite(name: string, values: Float64Array): void {
   for (let i = 0; i < values.length; i++) {
@@ -77,6 +99,7 @@ export function appraiseResolution(input: ResolutionInput): ResolutionFields {
   let largest = 0;
   for (const k of input.k) if (k > largest) largest = k;
   const floor = largest * (input.quietBelow ?? 1e-3);
+  const shortest = sublayerShare * meanLengthOf(input);
   const cellWidth = new Float64Array(n);
   const integralLength = new Float64Array(n).fill(Number.NaN);
   const gridRatio = new Float64Array(n).fill(Number.NaN);
@@ -106,6 +129,10 @@ export function appraiseResolution(input: ResolutionInput): ResolutionFields {
         taylorLength[i] = Math.sqrt((10 * viscosity * k) / epsilon);
         reach = length / eta;
       }
+    }
+    if (reach === Number.POSITIVE_INFINITY ? length < shortest : reach < sublayerLengths) {
+      quiet[i] = 1;
+      continue;
     }
     integralLength[i] = length;
     gridRatio[i] = length / width;
@@ -171,7 +198,7 @@ export function verdictOf(share: number, wanted: number, marginal: number): Verd
 }
 
 function wordsOf(verdict: Verdict, share: number, width: number, wantedWidth: number, wanted: number): string {
-  if (verdict === 'quiet') return 'quiet: no turbulence to be resolved here';
+  if (verdict === 'quiet') return 'quiet: no turbulence of its own to be resolved here';
   const cells = `cells of ${millimetres(width)} carry ${percent(share)} of the energy`;
   if (verdict === 'resolves') return `resolves: ${cells} (wanted ${percent(wanted)})`;
   const remedy = `${millimetres(wantedWidth)} would carry ${percent(wanted)}`;

@@ -73,8 +73,15 @@ export function collectLine(text: string, before: readonly MonitorLine[] = []): 
   return [...before, { name, from: pointOf(from), to: pointOf(to), count: positiveWholeNumber(count) }];
 }
 
-/** `all`, a boundary's name, or a plane such as `y=0`. */
+/** `all`, a boundary's name, a plane such as `y=0`, or `box=x,y,z:x,y,z` for faces whose centre is inside. */
 export function collectWall(text: string, before: readonly BoundarySelection[] = []): readonly BoundarySelection[] {
+  if (text.startsWith('box=')) {
+    const [low, high] = text.slice(4).split(':');
+    if (low === undefined || high === undefined) {
+      throw new InvalidArgumentError(`'${text}' is not a box; write box=x,y,z:x,y,z.`);
+    }
+    return [...before, { box: [pointOf(low), pointOf(high)] }];
+  }
   const match = /^([xyz])=(.+)$/.exec(text);
   if (match === null) return [...before, text];
   const at = Number(match[2]);
@@ -130,7 +137,7 @@ export function withAppraiseOptions(command: Command): Command {
     .addOption(
       option(
         '--walls <selection>',
-        "walls: all, a boundary's name, or a plane such as y=0; repeatable",
+        "walls: all, a boundary's name, a plane such as y=0, or box=x,y,z:x,y,z; repeatable",
         collectWall,
       ).default([]),
     )

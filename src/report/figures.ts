@@ -182,7 +182,8 @@ export function gridRatioPicture(
 ): PictureBlock {
   return slicePicture(slice, values, {
     title: 'GridRatio: eddy length over cell width',
-    caption: 'Dashed lines part cells below and above 5 and 10; quiet cells (next to no turbulence) are left blank.',
+    caption:
+      'Dashed lines part cells below and above 5 and 10; quiet cells (next to no turbulence, or the viscous sublayer) are left blank.',
     quantity: 'GridRatio',
     unit: '',
     scale: 'log',

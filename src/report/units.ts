@@ -18,5 +18,7 @@ export function timeText(seconds: number): string {
 
 /** A share in percent; one digit after the point below ten. */
 export function percentText(x: number): string {
-  return Number.isNaN(x) ? '-' : `${(100 * x).toFixed(x > 0 && x < 0.1 ? 1 : 0)} %`;
+  if (Number.isNaN(x)) return '-';
+  if (x > 0 && x < 5e-4) return 'below 0.1 %';
+  return `${(100 * x).toFixed(x > 0 && x < 0.1 ? 1 : 0)} %`;
 }

@@ -184,6 +184,14 @@ describe('options of appraise', () => {
     expect(collectPoint('a=1,2,-3e-1')).toEqual([{ name: 'a', at: [1, 2, -0.3] }]);
     expect(collectLine('l=0,0,0:1,1,1:3')).toEqual([{ name: 'l', from: [0, 0, 0], to: [1, 1, 1], count: 3 }]);
     expect(collectWall('y=0.5')).toEqual([{ plane: 'y', at: 0.5 }]);
+    expect(collectWall('box=0,0,0:1,2,3')).toEqual([
+      {
+        box: [
+          [0, 0, 0],
+          [1, 2, 3],
+        ],
+      },
+    ]);
     expect(collectWall('hull', ['all'])).toEqual(['all', 'hull']);
     expect(collectSlice('x=-1')).toEqual([{ axis: 'x', position: -1 }]);
     for (const wrong of ['1,2,3', 'a=1,2', 'a=1,,3', 'a=x,1,2']) expect(() => collectPoint(wrong)).toThrow();
