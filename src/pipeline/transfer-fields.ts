@@ -54,8 +54,30 @@ function asShared(values: Float64Array): Float64Array {
 /** Names that vanish on a no-slip wall. */
 const zeroAtWalls = new Set(['Velocity', 'TurbulentEnergyKinetic', 'VelocityCovariance']);
 
+/**
+ * Wall places that add something to the cloud: along constant axes many fall together, and a profile may hold its wall
+ * points already.
+ */
+function newPlaces(cloud: PrecursorCloud, walls: Float64Array, constantAxes: readonly number[]): Float64Array {
+  if (constantAxes.length === 0) return walls;
+  const axes = [0, 1, 2].filter((axis) => !constantAxes.includes(axis));
+  const key = (points: Float64Array, i: number): string => axes.map((axis) => points[3 * i + axis]).join();
+  const seen = new Set<string>();
+  for (let i = 0; i < cloud.points.length / 3; i += 1) seen.add(key(cloud.points, i));
+  const kept: number[] = [];
+  for (let i = 0; i < walls.length / 3; i += 1) {
+    const place = key(walls, i);
+    if (seen.has(place)) continue;
+    seen.add(place);
+    kept.push(walls[3 * i] as number, walls[3 * i + 1] as number, walls[3 * i + 2] as number);
+  }
+  return Float64Array.from(kept);
+}
+
 /** The cloud with its walls: zero velocity and k there, other quantities from the nearest point. */
-function withWalls(cloud: PrecursorCloud, walls: Float64Array, constantAxes: readonly number[]): PrecursorCloud {
+function withWalls(cloud: PrecursorCloud, all: Float64Array, constantAxes: readonly number[]): PrecursorCloud {
+  const walls = newPlaces(cloud, all, constantAxes);
+  if (walls.length === 0) return cloud;
   const extra = walls.length / 3;
   const count = cloud.points.length / 3;
   const points = sharedFloat64(3 * (count + extra));
@@ -139,7 +161,9 @@ async function transferFromCells(
     }
     return values;
   };
-  const logs = names.map((name) => options.logarithmic && findQuantity(name)?.logInterpolated === true);
+  // Conservation is of the quantity itself, not of its logarithm.
+  const mayLog = options.logarithmic && options.method !== 'conservative';
+  const logs = names.map((name) => mayLog && findQuantity(name)?.logInterpolated === true);
   const fields = names.map((name, i) => {
     const field = cloud.fields.get(name) as Field;
     let values = onVolumes(field);
