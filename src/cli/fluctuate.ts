@@ -54,6 +54,7 @@ async function fluctuateCommand(file: string, options: FluctuateOptions): Promis
       subgrid: options.subgrid,
     },
     workers: options.workers,
+    memory: options.memory,
     overwrite: options.overwrite,
     dryRun: options.dryRun,
     version: packageVersion(),

@@ -47,7 +47,8 @@ function sentenceOf(error: unknown): { text: string; code: number } {
   return { text: `Internal fault: ${String(error)}.`, code: exitCodes.machineRefused };
 }
 
-async function buildProgram(): Promise<Command> {
+/** The program with all its commands; errors are thrown. */
+export async function buildProgram(): Promise<Command> {
   const program = new Command('eddygraft');
   program
     .description('Turns a cheap precursor flow result into a start that an eddy-resolving run can trust.')

@@ -54,6 +54,7 @@ async function transferCommand(precursor: string, target: string, options: Trans
       limited: true,
     },
     workers: options.workers,
+    memory: options.memory,
     overwrite: options.overwrite,
     dryRun: options.dryRun,
     version: packageVersion(),

@@ -9,7 +9,7 @@ import { controlDivergence } from './control.js';
 import { fluctuateFields } from './fluctuate-fields.js';
 import { gatherPrecursor } from './precursor.js';
 import type { Progress } from './progress.js';
-import { finishStart } from './run.js';
+import { finishStart, refuseBeyond } from './run.js';
 import { facesOf } from './selections.js';
 import { loadTarget, type PeriodicDirection } from './target.js';
 import { openWorkers } from './workers.js';
@@ -24,6 +24,8 @@ export interface FluctuateRequest {
   readonly walls: readonly FaceSelection[];
   readonly settings: FluctuationSettings;
   readonly workers?: number | undefined;
+  /** Bytes; refused when an estimate exceeds them. */
+  readonly memory?: number | undefined;
   readonly overwrite?: boolean | undefined;
   readonly dryRun?: boolean | undefined;
   readonly version: string;
@@ -52,6 +54,7 @@ export async function fluctuateOnly(request: FluctuateRequest): Promise<Fluctuat
   const workers = openWorkers(request.workers);
   try {
     const target = await loadTarget(file, request.periodic, progress, timings);
+    refuseBeyond(request.memory, target);
     const walls = await facesOf(target, request.walls);
     const { mesh } = target;
     const needsFile = settings.energy === 'precursor' || settings.length === 'precursor';

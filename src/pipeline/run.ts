@@ -52,9 +52,10 @@ export function memoryEstimate(cells: number, points: number): number {
   return 200e6 + 1400 * cells + 450 * points;
 }
 
-function refuseBeyond(memory: number | undefined, target: Target, precursor: Precursor): void {
+/** @throws InputError when the estimate exceeds what the user allows */
+export function refuseBeyond(memory: number | undefined, target: Target, precursor?: Precursor): void {
   if (memory === undefined) return;
-  const points = precursor.clouds.reduce((sum, cloud) => sum + cloud.points.length / 3, 0);
+  const points = precursor?.clouds.reduce((sum, cloud) => sum + cloud.points.length / 3, 0) ?? 0;
   const needed = memoryEstimate(target.mesh.cellCount, points);
   if (needed <= memory) return;
   throw new InputError({

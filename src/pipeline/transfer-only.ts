@@ -3,6 +3,7 @@ import { requireFree } from '../basis/half-written.js';
 import { formatToWrite } from '../formats/registry.js';
 import { loadPrecursor, type PrecursorOptions } from './precursor.js';
 import type { Progress } from './progress.js';
+import { refuseBeyond } from './run.js';
 import { loadTarget } from './target.js';
 import { type TransferOptions, type Transferred, transferFields } from './transfer-fields.js';
 import { openWorkers } from './workers.js';
@@ -15,6 +16,8 @@ export interface TransferRequest {
   readonly reading: PrecursorOptions;
   readonly transfer: Omit<TransferOptions, 'wallPoints'>;
   readonly workers?: number | undefined;
+  /** Bytes; refused when an estimate exceeds them. */
+  readonly memory?: number | undefined;
   readonly overwrite?: boolean | undefined;
   readonly dryRun?: boolean | undefined;
   readonly version: string;
@@ -40,6 +43,7 @@ export async function transferOnly(request: TransferRequest): Promise<TransferOu
   try {
     const precursor = await loadPrecursor(request.precursor, request.reading, progress, timings);
     const target = await loadTarget(request.target, [], progress, timings);
+    refuseBeyond(request.memory, target, precursor);
     const transferred = await transferFields(precursor, target, request.transfer, workers, progress, timings);
     const fields = new Map<string, Field>(transferred.fields);
     fields.set('Outside', outsideField(transferred.outside));
