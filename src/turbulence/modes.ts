@@ -75,6 +75,13 @@ function shellEdges(options: ModeOptions, frame: Frame): Float64Array {
   return Float64Array.from(edges, (e) => e * unit);
 }
 
+/** Unit vector along p x q. */
+function cross(p: Vector, q: Vector): Vector {
+  const c: Vector = [p[1] * q[2] - p[2] * q[1], p[2] * q[0] - p[0] * q[2], p[0] * q[1] - p[1] * q[0]];
+  const size = Math.hypot(...c);
+  return [c[0] / size, c[1] / size, c[2] / size];
+}
+
 function perpendicular(k: Vector, wanted: Vector): Vector {
   const k2 = k[0] ** 2 + k[1] ** 2 + k[2] ** 2;
   let a = wanted;
@@ -127,27 +134,32 @@ export function createModes(options: ModeOptions): ModeSet {
   // Directions that do not fill a triad go on in the next shell, so that neighbouring shells complete each other.
   let spare: { axes: [Vector, Vector, Vector]; used: number } | undefined;
   const triads = Math.floor(directions / 3);
-  const met = new Set<string>();
+  // Wave vectors used in the shell: the polarisation of the first use, or null after the second.
+  const met = new Map<string, Vector | null>();
   for (let s = 0; s < shells; s++) {
     const place = (mode: number, d: Vector, a: Vector): void => {
       const stretched: Vector = [d[0] / stretch[0], d[1] / stretch[1], d[2] / stretch[2]];
       const length = Math.hypot(...stretched);
       const unit: Vector = [stretched[0] / length, stretched[1] / length, stretched[2] / length];
+      const unstretched: Vector = [a[0] * stretch[0], a[1] * stretch[1], a[2] * stretch[2]];
+      const size = Math.hypot(...unstretched);
+      let polarisation: Vector = [unstretched[0] / size, unstretched[1] / size, unstretched[2] / size];
       let k: Vector;
       if (frame.periodic < 3) k = snapKeepingLength(frame, unit, waves[s]! * length);
       else {
-        // A wave vector met twice in a shell would interfere with itself: another is sought as long as there may be one.
+        // A wave vector met twice in a shell would interfere with itself: another is sought as long as there may be one,
+        // then one met once whose second polarisation is free.
         for (let attempt = 0; ; attempt++) {
           k = snapInside(frame, unit, edges[s]! * length, edges[s + 1]! * length, radius, attempt);
           const key = latticeKey(k);
-          if (attempt < 60 && met.has(key)) continue;
-          met.add(key);
+          const earlier = met.get(key);
+          if (attempt < 60 ? earlier !== undefined : attempt < 160 && earlier === null) continue;
+          if (earlier) polarisation = cross(k, earlier);
+          met.set(key, earlier === undefined ? perpendicular(k, polarisation) : null);
           break;
         }
       }
-      const unstretched: Vector = [a[0] * stretch[0], a[1] * stretch[1], a[2] * stretch[2]];
-      const size = Math.hypot(...unstretched);
-      const p = perpendicular(k, [unstretched[0] / size, unstretched[1] / size, unstretched[2] / size]);
+      const p = perpendicular(k, polarisation);
       for (let c = 0; c < 3; c++) {
         waveVectors[3 * mode + c] = k[c]!;
         polarisations[3 * mode + c] = p[c]!;
