@@ -3,6 +3,7 @@ import { applyGradient, createGradient } from '../mesh/gradient.js';
 import { wallDistance } from '../mesh/wall-distance.js';
 import { comparePrecursors, type PrecursorComparison } from './comparison.js';
 import { type Histogram, quantiles, weightedHistogram, weightedQuantile } from './histogram.js';
+import { homogeneousAxes, middleCells } from './homogeneous.js';
 import { type Monitor, type MonitorOptions, planMonitors } from './monitors.js';
 import { type Region, worstRegions } from './regions.js';
 import {
@@ -223,6 +224,15 @@ function planMotion(
   });
   const courant = rates.map((rate, i) => (rate + 3 * (swing[i] as number)) * plan.timeStep);
   const gradient = applyGradient(createGradient(mesh, geometry, input.periodic), velocity, 3);
+  // Where nothing varies along an axis across the flow, probes belong in the middle of it.
+  const along = Math.max(...plan.bulkDirection.map(Math.abs));
+  const speed = Float64Array.from({ length: mesh.cellCount }, (_, i) =>
+    Math.hypot(velocity[3 * i] as number, velocity[3 * i + 1] as number, velocity[3 * i + 2] as number),
+  );
+  const still = homogeneousAxes(geometry, speed);
+  const across = homogeneousAxes(geometry, k).filter(
+    (axis) => still.includes(axis) && Math.abs(plan.bulkDirection[axis] as number) < 0.5 * along,
+  );
   const monitors = planMonitors(
     {
       centroids: geometry.cellCentroids,
@@ -233,6 +243,7 @@ function planMotion(
       shearRate: shearRate(gradient),
       ...(distance === undefined ? {} : { wallDistance: distance }),
       direction: plan.bulkDirection,
+      ...(across.length === 0 ? {} : { eligible: middleCells(geometry, across) }),
     },
     options.monitors,
   );

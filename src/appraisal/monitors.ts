@@ -39,6 +39,8 @@ export interface MonitorInput {
   readonly wallDistance?: Float64Array;
   /** Unit vector of the main flow. */
   readonly direction: readonly [number, number, number];
+  /** n, 0 for cells that are not to be chosen (away from the middle of a homogeneous direction); default: all may be. */
+  readonly eligible?: Uint8Array;
 }
 
 export interface MonitorLine {
@@ -116,6 +118,9 @@ function farEnough(input: MonitorInput, cell: number, taken: readonly number[], 
 
 /** Highest scores first, each at least `spacing` lengths from those taken; cells with score 0 never. */
 function pickSpread(input: MonitorInput, score: Float64Array, count: number, spacing: number): readonly number[] {
+  if (input.eligible !== undefined) {
+    for (let i = 0; i < score.length; i++) if (input.eligible[i] === 0) score[i] = 0;
+  }
   const positive = score.filter((s) => s > 0);
   if (positive.length === 0 || count === 0) return [];
   const taken: number[] = [];
@@ -143,6 +148,7 @@ function alongWake(input: MonitorInput, count: number, spacing: number): readonl
     input.direction.reduce((sum, d, a) => sum + d * (input.centroids[3 * cell + a] as number), 0);
   const inside = (cell: number): boolean =>
     (input.k[cell] as number) >= limit &&
+    input.eligible?.[cell] !== 0 &&
     (input.wallDistance === undefined || (input.wallDistance[cell] as number) > 2 * (input.cellWidth[cell] as number));
   let low = Number.POSITIVE_INFINITY;
   let high = Number.NEGATIVE_INFINITY;

@@ -203,7 +203,7 @@ export function withAppraiseOptions(command: Command): Command {
     .addOption(
       option(
         '--slice <plane>',
-        'plane of the pictures, for example z=0.2; repeatable (default: middle of the shortest side)',
+        'plane of the pictures, for example z=0.2; repeatable (default: the middle of the axis along which k varies least)',
         collectSlice,
       ),
     )

@@ -4,16 +4,18 @@ import type { AppraisalReportData } from '../report/appraisal-data.js';
 import { appraisalReport } from '../report/appraisal-report.js';
 import { gridRatioPicture, pointsOnSlice, sharePicture, slicePicture } from '../report/figures.js';
 import type { PictureBlock, ReportPage } from '../report/page.js';
-import { type SliceAxis, sampleSlice, sliceMesh, sliceOutline, widestSlice } from '../report/slices.js';
+import { type SliceAxis, sampleSlice, sliceMesh, sliceOutline, tellingSlice } from '../report/slices.js';
 
 export interface AppraisePageInput {
   readonly title: string;
   readonly subtitle: string;
   readonly appraisal: Appraisal;
   readonly mesh: CellMesh;
+  /** 3 x cells, metres. */
+  readonly centroids: Float64Array;
   readonly k: Float64Array;
   readonly wallFaces: Int32Array;
-  /** Default: one slice through the middle of the shortest side. */
+  /** Default: the slice that shows most of k. */
   readonly slices?: readonly { readonly axis: SliceAxis; readonly position: number }[];
   readonly assumptions: readonly string[];
   readonly remarks: readonly string[];
@@ -22,7 +24,7 @@ export interface AppraisePageInput {
 
 function picturesOf(input: AppraisePageInput): { pictures: PictureBlock[]; monitorMap: PictureBlock } {
   const { appraisal, mesh } = input;
-  const places = input.slices ?? [widestSlice(mesh)];
+  const places = input.slices ?? [tellingSlice(mesh, input.centroids, input.k)];
   const pictures: PictureBlock[] = [];
   let monitorMap: PictureBlock | undefined;
   for (const { axis, position } of places) {

@@ -240,6 +240,7 @@ async function runAppraise(
       subtitle: `by ${precursorFile}${options.second === undefined ? '' : ` and ${options.second}`}`,
       appraisal,
       mesh: target.mesh,
+      centroids: target.geometry.cellCentroids,
       k: first.turbulence.k,
       wallFaces,
       ...(options.slice === undefined ? {} : { slices: options.slice }),

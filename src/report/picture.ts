@@ -236,11 +236,19 @@ export function drawPicture(block: PictureBlock): { svg: string; data: PictureDa
   parts.push(
     `<text class="title" transform="translate(14 ${top}) rotate(-90)" text-anchor="end">${block.axes[1]}, m</text>`,
   );
+  const labelled: (readonly [number, number, number])[] = [];
   for (const point of block.points ?? []) {
-    const px = x(point.at[0]).toFixed(1);
-    const py = y(point.at[1]).toFixed(1);
+    const px = x(point.at[0]);
+    const py = y(point.at[1]);
+    const wide = 7 * point.name.length + 8;
+    // Labels that would lie over one another are left out; the table names every probe.
+    const free = labelled.every(([lx, ly, lw]) => Math.abs(py - ly) > 14 || px > lx + lw || px + wide < lx);
+    parts.push(`<circle class="probe" cx="${px.toFixed(1)}" cy="${py.toFixed(1)}" r="4.5"/>`);
+    if (!free) continue;
+    labelled.push([px, py, wide]);
+    const side = px + wide > pictureRight ? 'end' : 'start';
     parts.push(
-      `<circle class="probe" cx="${px}" cy="${py}" r="4.5"/><text class="probe-label" x="${Number(px) + 7}" y="${Number(py) - 5}">${escapeHtml(point.name)}</text>`,
+      `<text class="probe-label" x="${(px + (side === 'end' ? -7 : 7)).toFixed(1)}" y="${(py - 5).toFixed(1)}" text-anchor="${side}">${escapeHtml(point.name)}</text>`,
     );
   }
   parts.push(colourBar(block, range, ramp, bottom));

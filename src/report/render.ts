@@ -63,7 +63,7 @@ function renderTable(block: TableBlock): string {
     const cells = row.map((cell, c) => {
       const value = typeof cell === 'number' && Number.isFinite(cell) ? ` data-value="${cell}"` : '';
       const text = cellText(cell);
-      const kind = numeric[c] ? 'number' : text.length > 40 ? 'long' : text.length <= 14 ? 'short' : '';
+      const kind = numeric[c] ? 'number' : text.length > 40 ? 'long' : text.length <= 26 ? 'short' : '';
       const attributes = `${kind === '' ? '' : ` class="${kind}"`}${value}`;
       const shown = escapeHtml(typeof cell === 'string' && text.length <= 14 ? prettyUnits(text) : text);
       return c === 0 ? `<th scope="row"${attributes}>${shown}</th>` : `<td${attributes}>${shown}</td>`;

@@ -1,4 +1,5 @@
 import { describe, expect, it } from 'vitest';
+import { homogeneousAxes, middleCells } from '../../src/appraisal/homogeneous.js';
 import { monitorsCsv, planMonitors } from '../../src/appraisal/monitors.js';
 import { courantRates, fluctuationRates, planRun } from '../../src/appraisal/run-plan.js';
 import { brickMesh, planes } from './brick.js';
@@ -98,6 +99,14 @@ describe('monitor plan', () => {
         );
       }
     }
+  });
+
+  it('stays in the middle of a direction along which nothing varies', () => {
+    expect(homogeneousAxes(geometry, k)).toEqual([2]);
+    const eligible = middleCells(geometry, [2]);
+    // Four layers: the two that touch the middle.
+    expect(eligible.reduce((sum, x) => sum + x, 0)).toBe(n / 2);
+    for (const m of planMonitors({ ...input, eligible })) expect(Math.abs(m.position[2] - 0.1)).toBeLessThan(0.026);
   });
 
   it('says what each probe can see', () => {

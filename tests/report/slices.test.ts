@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { sampleSlice, sliceMesh, sliceOutline, widestSlice } from '../../src/report/slices.js';
+import { sampleSlice, sliceMesh, sliceOutline, tellingSlice, widestSlice } from '../../src/report/slices.js';
 import { brickMesh, planes } from '../appraisal/brick.js';
 
 describe('slices', () => {
@@ -77,5 +77,11 @@ describe('slices', () => {
     const slice = sliceMesh(mesh, 'z', 0.2, 50);
     expect(sampleSlice(slice, geometry.cellCentroids, 3, 2)[10]).toBeCloseTo(0.25, 6);
     expect(widestSlice(mesh)).toEqual({ axis: 'z', position: 0.25 });
+    // A channel profile along z: cut along the flow, not through the middle of the shortest side.
+    const profile = Float64Array.from(
+      { length: mesh.cellCount },
+      (_, i) => geometry.cellCentroids[3 * i + 2] as number,
+    );
+    expect(tellingSlice(mesh, geometry.cellCentroids, profile)).toEqual({ axis: 'y', position: 0.5 });
   });
 });
