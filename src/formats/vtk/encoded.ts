@@ -2,6 +2,7 @@ import { inflateSync } from 'node:zlib';
 import { decompressBlock } from 'lz4js';
 import { InputError } from '../../basis/errors.js';
 import type { FileReader } from '../file-reader.js';
+import { openBase64 } from './base64.js';
 import { allocate, swapBytes } from './numbers.js';
 
 export type Compressor = 'none' | 'zlib' | 'lz4' | 'lzma';
@@ -65,71 +66,19 @@ function rawSource(reader: FileReader, place: EncodedPlace): ByteSource {
   };
 }
 
-const spaces = new Set([0x20, 0x0a, 0x0d, 0x09]);
-
-function withoutSpaces(bytes: Uint8Array): Uint8Array {
-  let kept = 0;
-  for (let i = 0; i < bytes.length; i += 1) {
-    const byte = bytes[i] as number;
-    if (!spaces.has(byte)) {
-      bytes[kept] = byte;
-      kept += 1;
-    }
-  }
-  return bytes.subarray(0, kept);
-}
-
 function textSource(reader: FileReader, place: EncodedPlace): ByteSource {
-  let at = place.begin;
-  let held: Uint8Array<ArrayBufferLike> = new Uint8Array(0);
-  let left: Uint8Array<ArrayBufferLike> = new Uint8Array(0);
-  /** The next `count` characters that are not white space. */
-  const characters = (count: number): Uint8Array => {
-    const parts: Uint8Array[] = [];
-    let have = 0;
-    while (have < count) {
-      if (held.length === 0) {
-        // A header needs few characters, data many.
-        const length = Math.min(at === place.begin ? 1 << 12 : 1 << 20, place.end - at);
-        if (length <= 0) throw fault(reader, place.label, 'the base64 text ends too early');
-        held = withoutSpaces(reader.bytes(at, length, place.label));
-        at += length;
-      }
-      const part = held.subarray(0, count - have);
-      parts.push(part);
-      held = held.subarray(part.length);
-      have += part.length;
-    }
-    return parts.length === 1 ? (parts[0] as Uint8Array) : Buffer.concat(parts);
-  };
-  const decode = (quads: Uint8Array): Uint8Array =>
-    Buffer.from(Buffer.from(quads.buffer, quads.byteOffset, quads.byteLength).toString('latin1'), 'base64');
+  const text = openBase64(reader, place.begin, place.end, place.label);
   return {
     take: (count) => {
       const out = allocate(reader.path, place.label, () => new Uint8Array(count));
-      let have = Math.min(count, left.length);
-      out.set(left.subarray(0, have));
-      left = left.subarray(have);
-      while (have < count) {
-        const quads = Math.min(Math.ceil((count - have) / 3), 1 << 18);
-        const bytes = decode(characters(quads * 4));
-        if (bytes.length === 0) throw fault(reader, place.label, 'the base64 text is not valid');
-        const used = Math.min(bytes.length, count - have);
-        out.set(bytes.subarray(0, used), have);
-        have += used;
-        left = bytes.subarray(used);
-        if (bytes.length < quads * 3 && have < count)
-          throw fault(reader, place.label, 'the base64 text ends too early');
-      }
+      text.read(out);
       return out;
     },
-    nextStream: () => {
-      left = new Uint8Array(0);
-    },
+    nextStream: text.nextStream,
     endsAfter: (count) => {
       const first = reader.bytes(place.begin, Math.min(256, place.end - place.begin), place.label);
-      const clean = withoutSpaces(first);
-      return clean[Math.ceil(count / 3) * 4 - 1] === 0x3d;
+      const characters = Buffer.from(first).toString('latin1').replace(/\s+/g, '');
+      return characters[Math.ceil(count / 3) * 4 - 1] === '=';
     },
   };
 }
