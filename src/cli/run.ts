@@ -1,7 +1,7 @@
 import type { Command } from 'commander';
 import { readCase } from '../case/read-case.js';
 import { runCase } from '../pipeline/run.js';
-import { runPage } from '../pipeline/run-page.js';
+import { runPage, runSummary } from '../pipeline/run-page.js';
 import { renderReport } from '../report/render.js';
 import { summaryTables } from '../report/terminal.js';
 import { type CommonOptions, withCommonOptions } from './options.js';
@@ -23,7 +23,7 @@ async function runCommand(file: string, options: CommonOptions): Promise<void> {
   });
   const { manifest } = result;
   for (const remark of manifest.remarks) terminal.remark(remark);
-  terminal.say(summaryTables(runPage(result)));
+  terminal.say(summaryTables(runSummary(result)));
   if (options.dryRun === true) terminal.say('Dry run: nothing was written.');
   else
     terminal.say(`Written: ${[given.output.file, given.output.manifest, given.output.report ?? ''].join(' ').trim()}`);
