@@ -18,8 +18,6 @@ export interface FileContext {
   readonly reader: FileReader;
   readonly encoding: Encoding;
   readonly appended: Head['appended'];
-  /** File version, for renumberings that depend on it. */
-  readonly version: number;
 }
 
 const compressors: Readonly<Record<string, Encoding['compressor']>> = {
@@ -48,7 +46,6 @@ export function openContext(reader: FileReader, head: Head): FileContext {
     reader,
     encoding: { headerBytes: header === 'UInt32' ? 4 : 8, bigEndian: order === 'BigEndian', compressor },
     appended: head.appended,
-    version: Number(attributes.version ?? '0.1'),
   };
 }
 
