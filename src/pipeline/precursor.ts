@@ -18,6 +18,8 @@ export interface PrecursorCloud {
 export interface Precursor {
   readonly file: string;
   readonly dataset: Dataset;
+  /** The data set with its cells in the placed position; absent where placing has left only points. */
+  readonly mesh?: Dataset;
   readonly clouds: readonly PrecursorCloud[];
   /** Values that hold everywhere. */
   readonly constants: Readonly<Record<string, number>>;
@@ -113,7 +115,7 @@ export function gatherPrecursor(dataset: Dataset, options: PrecursorOptions): Pr
       throw new InputError({ file, place: `quantity ${wanted}`, cause: 'the file does not hold it' });
     }
   }
-  return { file, dataset, clouds, constants, constantAxes, recognised, unrecognised, assumptions };
+  return { file, dataset, mesh: dataset, clouds, constants, constantAxes, recognised, unrecognised, assumptions };
 }
 
 /** Reads one precursor file. */

@@ -1,6 +1,7 @@
 import { type GradientOperator, gradientRange } from '../mesh/gradient.js';
 import { type WallDistancePlan, wallDistanceRange } from '../mesh/wall-distance.js';
 import { type CellLinearOutput, type CellLinearPlan, cellLinearRange } from '../transfer/cell-linear.js';
+import { type PointLinearPlan, pointLinearRange } from '../transfer/cell-linear-points.js';
 import { type CloudField, type CloudPlan, cloudTransferRange } from '../transfer/cloud.js';
 import { type ConservativeOutput, type ConservativePlan, conservativeRange } from '../transfer/conservative.js';
 import { expectedRange } from '../turbulence/compensate.js';
@@ -18,6 +19,7 @@ export interface TaskPayloads {
     readonly out: CellLinearOutput;
   };
   readonly cells: { readonly plan: CellLinearPlan; readonly targets: Float64Array; readonly out: CellLinearOutput };
+  readonly points: { readonly plan: PointLinearPlan; readonly targets: Float64Array; readonly out: CellLinearOutput };
   readonly conservative: { readonly plan: ConservativePlan; readonly out: ConservativeOutput };
   readonly wallDistance: { readonly plan: WallDistancePlan; readonly out: Float64Array };
   readonly gradient: {
@@ -44,6 +46,7 @@ type RangeWork = { readonly [N in TaskName]: (payload: TaskPayload<N>, begin: nu
 const work: RangeWork = {
   cloud: ({ plan, fields, targets, out }, begin, end) => cloudTransferRange(plan, fields, targets, begin, end, out),
   cells: ({ plan, targets, out }, begin, end) => cellLinearRange(plan, targets, begin, end, out),
+  points: ({ plan, targets, out }, begin, end) => pointLinearRange(plan, targets, begin, end, out),
   conservative: ({ plan, out }, begin, end) => conservativeRange(plan, begin, end, out),
   wallDistance: ({ plan, out }, begin, end) => wallDistanceRange(plan, begin, end, out),
   gradient: ({ operator, values, components, out }, begin, end) =>

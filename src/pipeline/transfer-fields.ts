@@ -1,10 +1,13 @@
+import type { Dataset } from '../basis/dataset.js';
 import { InputError } from '../basis/errors.js';
 import { type Field, sharedFloat64 } from '../basis/fields.js';
 import { findQuantity } from '../basis/quantities.js';
 import { buildMesh } from '../mesh/build.js';
+import type { CellMesh, MeshGeometry } from '../mesh/cell-mesh.js';
 import { measureMesh } from '../mesh/geometry.js';
 import { requirePositiveVolumes } from '../mesh/quality.js';
 import { type OutsideRule, prepareCellLinear } from '../transfer/cell-linear.js';
+import { preparePointLinear } from '../transfer/cell-linear-points.js';
 import { type CloudField, type CloudMethod, cloudTransferRange, prepareCloudTransfer } from '../transfer/cloud.js';
 import { prepareConservative } from '../transfer/conservative.js';
 import type { Precursor, PrecursorCloud } from './precursor.js';
@@ -133,15 +136,22 @@ interface Output {
   readonly distance: Float64Array;
 }
 
-function hasVolumeCells(precursor: Precursor): boolean {
-  const types = precursor.dataset.cells?.types;
+function hasVolumeCells(mesh: Dataset | undefined): boolean {
+  const types = mesh?.cells?.types;
   // Numbers of volume cells: 10 to 16, quadratic 24 to 27 and their kin, 42.
   return types?.some((type) => (type >= 10 && type <= 16) || (type >= 24 && type !== 28 && type !== 30)) === true;
 }
 
-/** Cell values of a mesh may be reconstructed with their slopes; logarithms are taken before and undone after. */
-async function transferFromCells(
-  precursor: Precursor,
+function measured(dataset: Dataset): { readonly mesh: CellMesh; readonly geometry: MeshGeometry } {
+  const mesh = buildMesh(dataset);
+  const geometry = measureMesh(mesh);
+  requirePositiveVolumes(mesh, geometry, dataset.file);
+  return { mesh, geometry };
+}
+
+/** Values at the points of a mesh, by the shape functions of the cell that holds the target. */
+async function transferFromPoints(
+  dataset: Dataset,
   cloud: PrecursorCloud,
   target: Target,
   options: TransferOptions,
@@ -149,9 +159,40 @@ async function transferFromCells(
   workers: Workers,
   progress: Progress,
 ): Promise<void> {
-  const mesh = buildMesh(precursor.dataset);
-  const geometry = measureMesh(mesh);
-  requirePositiveVolumes(mesh, geometry, precursor.file);
+  const { mesh, geometry } = measured(dataset);
+  const logs: boolean[] = [];
+  const fields = [...cloud.fields].map(([name, field]) => {
+    const inLogarithm =
+      options.logarithmic && findQuantity(name)?.logInterpolated === true && field.values.every((value) => value > 0);
+    logs.push(inLogarithm);
+    return { components: field.components, values: inLogarithm ? field.values.map(Math.log) : field.values };
+  });
+  const plan = preparePointLinear(dataset, mesh, geometry, fields, {
+    outside: options.outside === 'fail' ? 'nearest' : options.outside,
+  });
+  const targets = target.geometry.cellCentroids;
+  await workers.overRanges('points', { plan, targets, out }, target.mesh.cellCount, progress);
+  undoLogarithms(logs, out);
+}
+
+function undoLogarithms(logs: readonly boolean[], out: Output): void {
+  logs.forEach((log, i) => {
+    const values = out.fields[i] as Float64Array;
+    if (log) for (let c = 0; c < values.length; c += 1) values[c] = Math.exp(values[c] as number);
+  });
+}
+
+/** Cell values of a mesh may be reconstructed with their slopes; logarithms are taken before and undone after. */
+async function transferFromCells(
+  dataset: Dataset,
+  cloud: PrecursorCloud,
+  target: Target,
+  options: TransferOptions,
+  out: Output,
+  workers: Workers,
+  progress: Progress,
+): Promise<void> {
+  const { mesh, geometry } = measured(dataset);
   const names = [...cloud.fields.keys()];
   const onVolumes = (field: Field): Float64Array => {
     const values = new Float64Array(mesh.cellCount * field.components);
@@ -184,10 +225,7 @@ async function transferFromCells(
     const targets = target.geometry.cellCentroids;
     await workers.overRanges('cells', { plan, targets, out }, target.mesh.cellCount, progress);
   }
-  logs.forEach((log, i) => {
-    const values = out.fields[i] as Float64Array;
-    if (log) for (let c = 0; c < values.length; c += 1) values[c] = Math.exp(values[c] as number);
-  });
+  undoLogarithms(logs, out);
 }
 
 function checkOutside(options: TransferOptions, outside: Uint8Array, precursor: Precursor, target: Target): void {
@@ -224,7 +262,7 @@ export async function transferFields(
   const assumptions: string[] = [];
   const used: string[] = [];
   const { constantAxes } = precursor;
-  const withCells = constantAxes.length === 0 && hasVolumeCells(precursor);
+  const mesh = constantAxes.length === 0 && hasVolumeCells(precursor.mesh) ? precursor.mesh : undefined;
   for (const cloud of precursor.clouds) {
     const names = [...cloud.fields.keys()];
     const out: Output = {
@@ -232,7 +270,7 @@ export async function transferFields(
       outside: sharedUint8(cells),
       distance: sharedFloat64(cells),
     };
-    const byCells = cloud.place === 'cells' && withCells;
+    const byCells = cloud.place === 'cells' && mesh !== undefined;
     if (options.method === 'conservative' && !byCells) {
       throw new InputError({
         file: precursor.file,
@@ -242,10 +280,18 @@ export async function transferFields(
     }
     const walls = options.wallPoints;
     const useWalls = walls !== undefined && walls.length > 0 && options.method !== 'conservative';
-    if (options.method === 'conservative' || (options.method === 'linear' && byCells && !useWalls)) {
+    if (mesh !== undefined && options.method === 'linear' && cloud.place === 'points') {
+      used.push('linear (shape functions)');
+      await timed(progress, timings, 'transfer', cells, () =>
+        transferFromPoints(mesh, cloud, target, options, out, workers, progress),
+      );
+    } else if (
+      mesh !== undefined &&
+      (options.method === 'conservative' || (options.method === 'linear' && !useWalls))
+    ) {
       used.push(options.method === 'conservative' ? 'conservative' : 'linear (cells)');
       await timed(progress, timings, 'transfer', cells, () =>
-        transferFromCells(precursor, cloud, target, options, out, workers, progress),
+        transferFromCells(mesh, cloud, target, options, out, workers, progress),
       );
     } else {
       const method = options.method as CloudMethod;
