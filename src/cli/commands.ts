@@ -1,4 +1,5 @@
 import type { Command } from 'commander';
+import { addAppraise } from './appraise.js';
 import { addAudit } from './audit.js';
 import { addDescribe } from './describe.js';
 import { addFluctuate } from './fluctuate.js';
@@ -12,6 +13,7 @@ export function addCommands(program: Command): void {
   addRun(program);
   addTransfer(program);
   addFluctuate(program);
+  addAppraise(program);
   addAudit(program);
   addFollowup(program);
   addDescribe(program);

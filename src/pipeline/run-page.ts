@@ -1,16 +1,10 @@
 import { weightedHistogram } from '../appraisal/histogram.js';
 import { type AuditFigures, courantRates } from '../audit/audit.js';
-import { slabProfile } from '../audit/slab-profile.js';
 import type { AuditReportFigures, ProfileFigures, RunReportData } from '../report/audit-data.js';
-import { gridRatioPicture, sharePicture, slicePicture } from '../report/figures.js';
-import type { PictureBlock, ReportPage } from '../report/page.js';
+import type { ReportPage } from '../report/page.js';
 import { runReport } from '../report/run-report.js';
-import { sampleSlice, sliceMesh, sliceOutline, tellingSlice } from '../report/slices.js';
+import { slabProfiles, startPictures } from '../report/start-pictures.js';
 import { type RunResult, scaledFields } from './run.js';
-
-/** Share of k that a mesh should carry: the 80 % of Pope 2000, section 13.5. */
-const wantedShare = 0.8;
-const profileSlabs = 40;
 
 /** The audit's figures as the page takes them: what is not known is left out. */
 export function reportFigures(audit: AuditFigures): AuditReportFigures {
@@ -32,152 +26,49 @@ export function reportFigures(audit: AuditFigures): AuditReportFigures {
   };
 }
 
-function magnitude(velocity: Float64Array): Float64Array {
-  return Float64Array.from({ length: velocity.length / 3 }, (_, c) =>
-    Math.hypot(velocity[3 * c] as number, velocity[3 * c + 1] as number, velocity[3 * c + 2] as number),
-  );
-}
-
-/** Largest absolute value that 99 % of the cells stay below: ends of a colour scale that outliers do not stretch. */
-function bulkRange(values: Float64Array): number {
-  const sorted = values.map(Math.abs).sort();
-  return (sorted[Math.floor(0.99 * (sorted.length - 1))] as number) || 1;
-}
-
-/** Axis along which the slab means of a field vary most. */
-function variedAxis(result: RunResult, values: Float64Array): number {
+/** Axis along which the wanted energy varies most: the slabs of the profiles are normal to it. */
+function variedAxis(result: RunResult, values: Float64Array): 'x' | 'y' | 'z' {
   const { cellCentroids, cellVolumes } = result.target.geometry;
-  const spreads = [0, 1, 2].map((axis) => {
-    const { means } = slabProfile(cellCentroids, cellVolumes, axis, 12, [(c) => values[c] as number]);
-    const list = means[0] as Float64Array;
-    return Math.max(...list) - Math.min(...list);
+  const zero = new Float64Array(3 * values.length);
+  const spreads = (['x', 'y', 'z'] as const).map((axis) => {
+    const wanted = slabProfiles(cellCentroids, cellVolumes, axis, values, zero, undefined, 12).curves[0]?.wanted ?? [];
+    const list = Array.from(wanted);
+    return { axis, spread: Math.max(...list) - Math.min(...list) };
   });
-  return spreads.indexOf(Math.max(...spreads));
+  return spreads.reduce((most, entry) => (entry.spread > most.spread ? entry : most)).axis;
 }
 
 function profilesOf(result: RunResult): ProfileFigures[] {
   const { fluctuations, controlled, target } = result;
   if (fluctuations === undefined || controlled === undefined) return [];
-  const u = controlled.fluctuation;
   const { wanted, total, plan } = fluctuations;
+  const { cellCentroids, cellVolumes } = target.geometry;
   const axis = variedAxis(result, total);
-  const { covariance } = plan;
-  const product = (i: number, j: number) => (c: number) => (u[3 * c + i] as number) * (u[3 * c + j] as number);
-  const share = (c: number): number => ((total[c] as number) > 0 ? (wanted[c] as number) / (total[c] as number) : 0);
-  const wantedOf = (place: number, isNormal: boolean) => (c: number) => {
-    if (covariance !== undefined) return share(c) * (covariance[6 * c + place] as number);
-    return isNormal ? (2 / 3) * (wanted[c] as number) : 0;
-  };
-  const { positions, means } = slabProfile(
-    target.geometry.cellCentroids,
-    target.geometry.cellVolumes,
-    axis,
-    profileSlabs,
-    [
-      (c) => wanted[c] as number,
-      (c) => (product(0, 0)(c) + product(1, 1)(c) + product(2, 2)(c)) / 2,
-      wantedOf(0, true),
-      product(0, 0),
-      wantedOf(3, true),
-      product(1, 1),
-      wantedOf(5, true),
-      product(2, 2),
-      wantedOf(1, false),
-      product(0, 1),
-    ],
-  );
-  const names = ['k', 'VelocityCovarianceXX', 'VelocityCovarianceYY', 'VelocityCovarianceZZ', 'VelocityCovarianceXY'];
-  return [
-    {
-      title: 'Wanted against recovered',
-      caption: `Means over slabs normal to ${'xyz'[axis]}; wanted is the resolvable part of the precursor's.`,
-      coordinate: `Coordinate${'XYZ'[axis]}`,
-      unit: 'm',
-      quantityUnit: 'm2/s2',
-      curves: names.map((name, i) => ({
-        name,
-        x: positions,
-        wanted: means[2 * i] as Float64Array,
-        recovered: means[2 * i + 1] as Float64Array,
-      })),
-    },
-  ];
+  // The resolvable part of the wanted stresses has their shape.
+  const covariance = plan.covariance?.map((value, i) => {
+    const c = Math.floor(i / 6);
+    const k = total[c] as number;
+    return k > 0 ? (value * (wanted[c] as number)) / k : 0;
+  });
+  return [slabProfiles(cellCentroids, cellVolumes, axis, wanted, controlled.fluctuation, covariance)];
 }
 
-function picturesOf(result: RunResult): { before: PictureBlock[]; after: PictureBlock[] } {
+function picturesOf(result: RunResult): ReturnType<typeof startPictures> {
   const { target, fields, transferred, controlled, fluctuations } = result;
-  const { mesh } = target;
   const velocity = fields.get('Velocity')?.values;
   const mean = fields.get('VelocityMean')?.values ?? transferred.fields.get('Velocity')?.values;
-  const guide = fluctuations?.total ?? (mean === undefined ? undefined : magnitude(mean));
-  if (guide === undefined) return { before: [], after: [] };
-  const { axis, position } = tellingSlice(mesh, target.geometry.cellCentroids, guide);
-  const slice = sliceMesh(mesh, axis, position);
-  const outline = {
-    boundary: sliceOutline(mesh, slice),
-    ...(result.walls.length === 0 ? {} : { walls: sliceOutline(mesh, slice, result.walls) }),
-  };
-  const show = (values: Float64Array, options: Omit<Parameters<typeof slicePicture>[2], 'walls' | 'boundary'>) =>
-    slicePicture(slice, sampleSlice(slice, values), { ...options, ...outline });
-  const before: PictureBlock[] = [];
-  const after: PictureBlock[] = [];
-  const speedRange = velocity === undefined ? undefined : ([0, bulkRange(magnitude(velocity))] as const);
-  if (mean !== undefined) {
-    before.push(
-      show(magnitude(mean), {
-        title: 'Before: mean speed',
-        quantity: 'VelocityMean, magnitude',
-        unit: 'm/s',
-        ...(speedRange === undefined ? {} : { range: speedRange }),
-      }),
-    );
-  }
-  if (fluctuations !== undefined) {
-    before.push(
-      show(fluctuations.total, { title: "The precursor's k", quantity: 'TurbulentEnergyKineticTotal', unit: 'm2/s2' }),
-    );
-  }
-  if (velocity !== undefined && speedRange !== undefined && controlled !== undefined) {
-    after.push(
-      show(magnitude(velocity), {
-        title: 'After: speed of the start',
-        quantity: 'Velocity, magnitude',
-        unit: 'm/s',
-        range: speedRange,
-      }),
-    );
-  }
-  if (controlled !== undefined && fluctuations !== undefined) {
-    const u = controlled.fluctuation;
-    const component = Float64Array.from({ length: u.length / 3 }, (_, c) => u[3 * c] as number);
-    const span = bulkRange(component);
-    after.push(
-      show(component, {
-        title: 'Superimposed velocity along x',
-        quantity: 'VelocityFluctuationX',
-        unit: 'm/s',
-        ramp: 'diverging',
-        range: [-span, span],
-      }),
-    );
-    const ratio = gridRatios(result);
-    after.push(
-      gridRatioPicture(slice, sampleSlice(slice, ratio), outline),
-      sharePicture(slice, sampleSlice(slice, fluctuations.resolvableShare), wantedShare, outline),
-    );
-    const scaled = scaledFields(result);
-    if (scaled !== undefined) {
-      after.push(
-        show(scaled.after, {
-          title: 'Scaled divergence after control',
-          quantity: '|div u| CellWidth / u_rms',
-          unit: '',
-          scale: 'log',
-        }),
-      );
-    }
-  }
-  return { before, after };
+  const pictures = startPictures({
+    mesh: target.mesh,
+    centroids: target.geometry.cellCentroids,
+    wallFaces: result.walls,
+    ...(mean === undefined ? {} : { mean }),
+    ...(velocity === undefined || controlled === undefined ? {} : { velocity }),
+    ...(controlled === undefined ? {} : { fluctuation: controlled.fluctuation }),
+    ...(fluctuations === undefined
+      ? {}
+      : { k: fluctuations.total, share: fluctuations.resolvableShare, gridRatio: gridRatios(result) }),
+  });
+  return pictures;
 }
 
 /** IntegralLength over CellWidth; not a number where there is no turbulence. */
@@ -234,13 +125,13 @@ export function runReportData(result: RunResult, withPictures: boolean): RunRepo
     const { modes } = result.fluctuations.plan;
     steps.push(`${modes.shells * modes.directions} Fourier modes superimposed from seed ${manifest.seed}.`);
   }
-  const pictures = withPictures ? picturesOf(result) : { before: [], after: [] };
+  const pictures = withPictures ? picturesOf(result) : { before: [], pictures: [] };
   return {
     title: String((manifest.case as { readonly title: string }).title),
     subtitle: `${precursor.file} on ${target.file}`,
     audit: reportFigures(result.audit),
     operator: result.audit.divergence.operator,
-    pictures: pictures.after,
+    pictures: pictures.pictures,
     before: pictures.before,
     ...(withPictures ? { profiles: profilesOf(result), ...histogramsOf(result) } : {}),
     assumptions: manifest.assumptions,

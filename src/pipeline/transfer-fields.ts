@@ -305,6 +305,7 @@ export async function transferFields(
           power: options.power,
           outside: rule,
           constantAxes,
+          own: cloud.points.length / 3,
           file: precursor.file,
         }),
       );

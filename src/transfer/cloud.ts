@@ -26,6 +26,11 @@ export interface CloudOptions {
   readonly outside?: OutsideRule;
   /** Axes (0 x, 1 y, 2 z) along which the cloud is constant: a profile has two, a plane section one. */
   readonly constantAxes?: readonly number[];
+  /**
+   * Points before this number are the cloud's own; those from it on are wall points, which extend the hull but are never
+   * taken as the nearest point of a target outside. Default: all are the cloud's own.
+   */
+  readonly own?: number;
   /** For the text of errors. */
   readonly file?: string;
 }
@@ -39,6 +44,8 @@ interface SpaceSource {
   readonly kind: 'space';
   readonly tree: KdTree;
   readonly solid?: Tetrahedralisation;
+  /** Wall points are among the points. */
+  readonly walled: boolean;
 }
 
 interface PlaneSource {
@@ -48,6 +55,7 @@ interface PlaneSource {
   readonly triangulation?: PlaneTriangulation;
   /** A triangle at every point; -1 at none. */
   readonly triangleOf?: Int32Array;
+  readonly walled: boolean;
 }
 
 interface LineSource {
@@ -102,8 +110,10 @@ function planeSource(points: Float64Array, axes: readonly [number, number], opti
     flat[2 * i] = points[3 * i + axes[0]] as number;
     flat[2 * i + 1] = points[3 * i + axes[1]] as number;
   }
-  const index = buildPlaneIndex(flat);
-  if (options.method !== 'linear') return { kind: 'plane', axes, index };
+  const own = options.method === 'linear' ? Math.min(options.own ?? count, count) : count;
+  const walled = own < count;
+  const index = buildPlaneIndex(flat.subarray(0, 2 * own));
+  if (options.method !== 'linear') return { kind: 'plane', axes, index, walled };
   if (count < 3) throw tooFew(options.file, count, 3, 'linear in a plane');
   const triangulation = triangulatePlane(flat);
   if (triangulation === undefined) {
@@ -117,13 +127,15 @@ function planeSource(points: Float64Array, axes: readonly [number, number], opti
   for (let e = triangulation.triangles.length - 1; e >= 0; e -= 1) {
     triangleOf[triangulation.triangles[e] as number] = Math.floor(e / 3);
   }
-  return { kind: 'plane', axes, index, triangulation, triangleOf };
+  return { kind: 'plane', axes, index, triangulation, triangleOf, walled };
 }
 
 function spaceSource(points: Float64Array, options: CloudOptions): SpaceSource {
   const count = points.length / 3;
-  const tree = buildKdTree(points);
-  if (options.method !== 'linear') return { kind: 'space', tree };
+  const own = options.method === 'linear' ? Math.min(options.own ?? count, count) : count;
+  const walled = own < count;
+  const tree = buildKdTree(points.subarray(0, 3 * own));
+  if (options.method !== 'linear') return { kind: 'space', tree, walled };
   if (count < 4) throw tooFew(options.file, count, 4, 'linear');
   const solid = tetrahedralise(points);
   if (typeof solid === 'string') {
@@ -138,7 +150,7 @@ function spaceSource(points: Float64Array, options: CloudOptions): SpaceSource {
       remedy: remedies[solid],
     });
   }
-  return { kind: 'space', tree, solid };
+  return { kind: 'space', tree, solid, walled };
 }
 
 /**
@@ -265,7 +277,10 @@ function longestEdge(points: Float64Array, corners: Int32Array, count: number, d
   return Math.sqrt(longest);
 }
 
-function linearInSpace(solid: Tetrahedralisation, tree: KdTree, outside: OutsideRule): Finder {
+/** Steps of halving on the way from a target outside to the hull. */
+const hullSteps = 30;
+
+function linearInSpace(solid: Tetrahedralisation, tree: KdTree, walled: boolean, outside: OutsideRule): Finder {
   const search = createKdSearch();
   const squared = new Float64Array(1);
   const nearestOne = new Int32Array(1);
@@ -284,16 +299,32 @@ function linearInSpace(solid: Tetrahedralisation, tree: KdTree, outside: Outside
       return;
     }
     nearestNeighbours(tree, x, y, z, 1, nearestOne, squared, search);
+    const p = 3 * (nearestOne[0] as number);
+    const [px, py, pz] = [points[p] as number, points[p + 1] as number, points[p + 2] as number];
     if (outside !== 'extrapolate') {
       stencil.sources[0] = nearestOne[0] as number;
       takeNearest(stencil, squared[0] as number);
+      // Next to a wall the nearest point is too far from it: the place where the way there enters the hull is taken.
+      if (walled) {
+        let [away, inside] = [1, 0];
+        for (let step = 0; step < hullSteps; step += 1) {
+          const t = (away + inside) / 2;
+          from = locateTetrahedron(solid, px + (x - px) * t, py + (y - py) * t, pz + (z - pz) * t, from);
+          if (vertices[4 * from + 3] === ghost) away = t;
+          else inside = t;
+        }
+        const [ex, ey, ez] = [px + (x - px) * inside, py + (y - py) * inside, pz + (z - pz) * inside];
+        from = locateTetrahedron(solid, ex, ey, ez, from);
+        if (inside > 0 && vertices[4 * from + 3] !== ghost) {
+          stencil.sources.set(vertices.subarray(4 * from, 4 * from + 4));
+          barycentric(points, stencil, ex, ey, ez);
+        }
+      }
       return;
     }
     stencil.sources.set(corners);
     const distance = Math.sqrt(squared[0] as number);
     const reach = Math.min(1, longestEdge(points, corners, 4, 3) / distance);
-    const p = 3 * (nearestOne[0] as number);
-    const [px, py, pz] = [points[p] as number, points[p + 1] as number, points[p + 2] as number];
     barycentric(points, stencil, px + (x - px) * reach, py + (y - py) * reach, pz + (z - pz) * reach);
     stencil.outside = extrapolatedCode;
     stencil.distance = distance;
@@ -321,6 +352,28 @@ function planeWeights(t: PlaneTriangulation, triangle: number, x: number, y: num
   stencil.count = 3;
 }
 
+/** Moves a target outside towards its nearest point until it enters the hull, and takes the weights there. */
+function enterPlane(
+  t: PlaneTriangulation,
+  home: number,
+  nearest: number,
+  u: number,
+  v: number,
+  stencil: Stencil,
+): void {
+  const pu = t.points[2 * nearest] as number;
+  const pv = t.points[2 * nearest + 1] as number;
+  let [away, inside] = [1, 0];
+  for (let step = 0; step < hullSteps; step += 1) {
+    const middle = (away + inside) / 2;
+    if (locateTriangle(t, pu + (u - pu) * middle, pv + (v - pv) * middle, home) < 0) away = middle;
+    else inside = middle;
+  }
+  const [eu, ev] = [pu + (u - pu) * inside, pv + (v - pv) * inside];
+  const found = locateTriangle(t, eu, ev, home);
+  if (inside > 0 && found >= 0) planeWeights(t, found, eu, ev, stencil);
+}
+
 function planeFinder(source: PlaneSource, options: CloudPlan['options']): Finder {
   const [i, j] = source.axes;
   const search = openPlaneIndex(source.index);
@@ -341,7 +394,8 @@ function planeFinder(source: PlaneSource, options: CloudPlan['options']): Finder
   return (x, y, z, stencil) => {
     const [u, v] = pick(x, y, z);
     search.nearest(u, v, 1, one, squared);
-    const found = locateTriangle(triangulation, u, v, Math.max(0, triangleOf[one[0] as number] as number));
+    const home = Math.max(0, triangleOf[one[0] as number] as number);
+    const found = locateTriangle(triangulation, u, v, home);
     if (found >= 0) {
       planeWeights(triangulation, found, u, v, stencil);
       stencil.outside = insideCode;
@@ -351,6 +405,7 @@ function planeFinder(source: PlaneSource, options: CloudPlan['options']): Finder
     if (options.outside !== 'extrapolate') {
       stencil.sources[0] = one[0] as number;
       takeNearest(stencil, squared[0] as number);
+      if (source.walled) enterPlane(triangulation, home, one[0] as number, u, v, stencil);
       return;
     }
     const triangle = Math.floor((-1 - found) / 3);
@@ -427,7 +482,7 @@ function finderOf(plan: CloudPlan): Finder {
   const { source, options } = plan;
   if (source.kind === 'line') return lineFinder(source, options);
   if (source.kind === 'plane') return planeFinder(source, options);
-  if (source.solid !== undefined) return linearInSpace(source.solid, source.tree, options.outside);
+  if (source.solid !== undefined) return linearInSpace(source.solid, source.tree, source.walled, options.outside);
   const search = createKdSearch();
   const wanted = options.method === 'nearest' ? 1 : options.neighbours;
   return neighbourFinder(wanted, options.power, (x, y, z, count, out, squared) =>
