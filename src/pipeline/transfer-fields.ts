@@ -8,8 +8,9 @@ import { measureMesh } from '../mesh/geometry.js';
 import { requirePositiveVolumes } from '../mesh/quality.js';
 import { type OutsideRule, prepareCellLinear } from '../transfer/cell-linear.js';
 import { preparePointLinear } from '../transfer/cell-linear-points.js';
-import { type CloudField, type CloudMethod, cloudTransferRange, prepareCloudTransfer } from '../transfer/cloud.js';
+import { type CloudField, type CloudMethod, prepareCloudTransfer } from '../transfer/cloud.js';
 import { prepareConservative } from '../transfer/conservative.js';
+import { withPeriodicMargins, withWalls } from './extended-cloud.js';
 import type { Precursor, PrecursorCloud } from './precursor.js';
 import { type Progress, timed } from './progress.js';
 import type { Target } from './target.js';
@@ -52,72 +53,6 @@ function asShared(values: Float64Array): Float64Array {
   const copy = sharedFloat64(values.length);
   copy.set(values);
   return copy;
-}
-
-/** Names that vanish on a no-slip wall. */
-const zeroAtWalls = new Set(['Velocity', 'TurbulentEnergyKinetic', 'VelocityCovariance']);
-
-/**
- * Wall places that add something to the cloud: along constant axes many fall together, and a profile may hold its wall
- * points already.
- */
-function newPlaces(cloud: PrecursorCloud, walls: Float64Array, constantAxes: readonly number[]): Float64Array {
-  if (constantAxes.length === 0) return walls;
-  const axes = [0, 1, 2].filter((axis) => !constantAxes.includes(axis));
-  const key = (points: Float64Array, i: number): string => axes.map((axis) => points[3 * i + axis]).join();
-  const seen = new Set<string>();
-  for (let i = 0; i < cloud.points.length / 3; i += 1) seen.add(key(cloud.points, i));
-  const kept: number[] = [];
-  for (let i = 0; i < walls.length / 3; i += 1) {
-    const place = key(walls, i);
-    if (seen.has(place)) continue;
-    seen.add(place);
-    kept.push(walls[3 * i] as number, walls[3 * i + 1] as number, walls[3 * i + 2] as number);
-  }
-  return Float64Array.from(kept);
-}
-
-/** The cloud with its walls: zero velocity and k there, other quantities from the nearest point. */
-function withWalls(cloud: PrecursorCloud, all: Float64Array, constantAxes: readonly number[]): PrecursorCloud {
-  const walls = newPlaces(cloud, all, constantAxes);
-  if (walls.length === 0) return cloud;
-  const extra = walls.length / 3;
-  const count = cloud.points.length / 3;
-  const points = sharedFloat64(3 * (count + extra));
-  points.set(cloud.points);
-  points.set(walls, 3 * count);
-  const nearest = prepareCloudTransfer(cloud.points, { method: 'nearest', constantAxes });
-  const others = [...cloud.fields].filter(([name]) => !zeroAtWalls.has(name));
-  const values = others.map(([, field]) => new Float64Array(extra * field.components));
-  cloudAt(
-    nearest,
-    others.map(([, field]) => field),
-    walls,
-    values,
-  );
-  const fields = new Map<string, Field>();
-  for (const [name, field] of cloud.fields) {
-    const grown = sharedFloat64((count + extra) * field.components);
-    grown.set(field.values);
-    const at = others.findIndex(([other]) => other === name);
-    if (at >= 0) grown.set(values[at] as Float64Array, count * field.components);
-    fields.set(name, { components: field.components, values: grown });
-  }
-  return { place: cloud.place, points, fields };
-}
-
-function cloudAt(
-  plan: ReturnType<typeof prepareCloudTransfer>,
-  fields: readonly CloudField[],
-  targets: Float64Array,
-  values: readonly Float64Array[],
-): void {
-  const n = targets.length / 3;
-  cloudTransferRange(plan, fields, targets, 0, n, {
-    fields: values,
-    outside: new Uint8Array(n),
-    distance: new Float64Array(n),
-  });
 }
 
 function describeField(name: string, field: Field, logarithmic: boolean): CloudField {
@@ -296,7 +231,9 @@ export async function transferFields(
     } else {
       const method = options.method as CloudMethod;
       used.push(`${method} (${cloud.place})`);
-      const source = useWalls ? withWalls(cloud, walls, constantAxes) : cloud;
+      const whole =
+        constantAxes.length === 0 && method !== 'nearest' ? withPeriodicMargins(cloud, target, assumptions) : cloud;
+      const source = useWalls ? withWalls(whole, walls, constantAxes) : whole;
       const rule: OutsideRule = options.outside === 'fail' ? 'nearest' : options.outside;
       const plan = await timed(progress, timings, 'index precursor', 0, () =>
         prepareCloudTransfer(source.points, {
@@ -305,7 +242,7 @@ export async function transferFields(
           power: options.power,
           outside: rule,
           constantAxes,
-          own: cloud.points.length / 3,
+          own: whole.points.length / 3,
           file: precursor.file,
         }),
       );
