@@ -6,7 +6,7 @@ import { wideMatrix } from './wide-matrix.js';
 export interface ProjectionOptions {
   /** Ends when |D u| (root of the sum of squares) is down to this share of its start; default 1e-6. */
   readonly tolerance?: number;
-  /** Or when the scaled rms divergence of `scaledRms` is below this. */
+  /** Most iterations; default 1000. */
   readonly iterations?: number;
   /** Outward fluxes through the operator's `heldFaces`, m3/s. */
   readonly heldFluxes?: Float64Array;
@@ -71,7 +71,9 @@ export function project(op: FaceOperator, velocity: Float64Array, options: Proje
     energyAfter: energyBefore,
     energyOfChange: 0,
   };
-  if (start === 0 || start <= roundingLevel(op, velocity)) return unchanged;
+  // Below this lies rounding, part of it in the null space of D^T, which no potential answers.
+  const floor = attainable(op, velocity, heldFluxes);
+  if (start <= floor) return unchanged;
   const hierarchy = options.hierarchy ?? buildPreconditioner(op);
   const p = new Float64Array(n);
   const z = new Float64Array(n);
@@ -96,10 +98,11 @@ export function project(op: FaceOperator, velocity: Float64Array, options: Proje
       r[i] = (r[i] as number) - alpha * (q[i] as number);
     }
     rhoBefore = rho;
-    const share = Math.sqrt(dot(r, r)) / start;
+    const left = Math.sqrt(dot(r, r));
+    const share = left / start;
     history.push(share);
     options.progress?.(share);
-    if (share <= tolerance) {
+    if (share <= tolerance || left <= floor) {
       converged = true;
       break;
     }
@@ -118,19 +121,30 @@ export function project(op: FaceOperator, velocity: Float64Array, options: Proje
   };
 }
 
-/** Size of |D u| that rounding alone leaves. */
-function roundingLevel(op: FaceOperator, velocity: Float64Array): number {
-  let sum = 0;
-  for (let link = 0; link < op.linkCount; link += 1) {
-    for (const [cell, list] of [
-      [op.owner[link] as number, op.ownerWeights],
-      [op.neighbour[link] as number, op.neighbourWeights],
-    ] as const) {
-      for (let c = 0; c < 3; c += 1) sum += ((list[3 * link + c] as number) * (velocity[3 * cell + c] as number)) ** 2;
+/** Size of |D u| below which only rounding is left, and what held fluxes lack of balance. */
+function attainable(op: FaceOperator, velocity: Float64Array, heldFluxes: Float64Array | undefined): number {
+  const { owner, neighbour, ownerWeights, neighbourWeights, freeCells, freeAreas, cellCount } = op;
+  let squares = 0;
+  const addProducts = (cells: Int32Array, list: Float64Array): void => {
+    for (let i = 0; i < cells.length; i += 1) {
+      const c = cells[i] as number;
+      for (let d = 0; d < 3; d += 1) squares += ((list[3 * i + d] as number) * (velocity[3 * c + d] as number)) ** 2;
     }
+  };
+  addProducts(owner, ownerWeights);
+  addProducts(neighbour, neighbourWeights);
+  addProducts(freeCells, freeAreas);
+  let net = 0;
+  for (const flux of heldFluxes ?? []) {
+    squares += flux * flux;
+    net += flux;
   }
-  return 2 ** -52 * Math.sqrt(sum);
+  const lacking = freeCells.length > 0 ? 0 : Math.abs(net) / Math.sqrt(Math.max(1, cellCount));
+  // Products are rounded, and so are the centroids and areas in them: a few units in the last place each.
+  return roundingUnits * 2 ** -52 * Math.sqrt(squares) + 2 * lacking;
 }
+
+const roundingUnits = 8;
 
 function requireBalance(op: FaceOperator, heldFluxes: Float64Array | undefined): void {
   if (heldFluxes === undefined || op.freeCells.length > 0) return;
