@@ -1,6 +1,12 @@
 import { describe, expect, it } from 'vitest';
 import type { Dataset } from '../../src/basis/dataset.js';
-import { circulationFluxes, netFaceFluxes, type PotentialAt } from '../../src/divergence/circulation.js';
+import {
+  circulationFluxes,
+  faceKeyColumns,
+  faceKeys,
+  netFaceFluxes,
+  type PotentialAt,
+} from '../../src/divergence/circulation.js';
 import { meshEdges, periodicEdgeClasses } from '../../src/divergence/edges.js';
 import { buildMesh } from '../../src/mesh/build.js';
 import { measureMesh } from '../../src/mesh/geometry.js';
@@ -80,6 +86,35 @@ describe.each(kinds)('circulation fluxes on %s', (_name, build) => {
       const wanted = s[0]! * curl[0] + s[1]! * curl[1] + s[2]! * curl[2];
       expect(Math.abs(fluxes[f]! - wanted)).toBeLessThan(1e-14 + 1e-12 * Math.hypot(...s));
     }
+  });
+});
+
+describe('face keys', () => {
+  it('name cells and three points whose right-hand normal points from owner to neighbour', () => {
+    const { mesh, geometry } = open(hexBox(3, 4, 2));
+    const keys = faceKeys(mesh);
+    expect(keys.length).toBe(faceKeyColumns * mesh.faceCount);
+    const named = new Set<string>();
+    for (let f = 0; f < mesh.faceCount; f++) {
+      const [owner, neighbour, p, q, r] = keys.subarray(faceKeyColumns * f, faceKeyColumns * (f + 1)) as unknown as [
+        number,
+        number,
+        number,
+        number,
+        number,
+      ];
+      named.add([p, q, r].sort((a, b) => a - b).join());
+      const at = (i: number, c: number): number => mesh.points[3 * i + c]!;
+      const e = [0, 1, 2].map((c) => at(q, c) - at(p, c));
+      const g = [0, 1, 2].map((c) => at(r, c) - at(q, c));
+      const normal = [e[1]! * g[2]! - e[2]! * g[1]!, e[2]! * g[0]! - e[0]! * g[2]!, e[0]! * g[1]! - e[1]! * g[0]!];
+      const to =
+        neighbour < 0 ? geometry.faceCentroids.subarray(3 * f) : geometry.cellCentroids.subarray(3 * neighbour);
+      const along = [0, 1, 2].reduce((s, c) => s + normal[c]! * (to[c]! - geometry.cellCentroids[3 * owner + c]!), 0);
+      expect(along).toBeGreaterThan(0);
+      expect(neighbour < 0).toBe(f >= mesh.innerFaceCount);
+    }
+    expect(named.size).toBe(mesh.faceCount);
   });
 });
 
