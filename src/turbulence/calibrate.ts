@@ -187,11 +187,23 @@ function inWindows(input: CalibrationInput, axes: readonly Axis[]): Calibration 
     counts,
     wrapped,
   };
-  return fitMultiplier(field, onlyFilled(all));
+  const { sums, kept } = onlyFilled(all);
+  const windowOf = kept.map((box) => {
+    let at = 0;
+    let stride = 1;
+    let rest = box;
+    for (let d = 0; d < dimensions; d++) {
+      at += stride * Math.floor((rest % boxCounts[d]!) / boxesPerWindow);
+      stride *= boxCounts[d]! / boxesPerWindow;
+      rest = Math.floor(rest / boxCounts[d]!);
+    }
+    return at;
+  });
+  return fitMultiplier(field, sums, windowOf);
 }
 
 /** Boxes that hold cells; a box in a solid corner has no middle. */
-function onlyFilled(sums: EnergySums): EnergySums {
+function onlyFilled(sums: EnergySums): { sums: EnergySums; kept: Int32Array } {
   const keep: number[] = [];
   for (let b = 0; b < sums.boxes; b++) if (sums.wanted[b]! > 0 || sums.p[b]! > 0) keep.push(b);
   const pick = (values: Float64Array, width: number): Float64Array => {
@@ -201,7 +213,7 @@ function onlyFilled(sums: EnergySums): EnergySums {
     });
     return out;
   };
-  return {
+  const filled = {
     boxes: keep.length,
     middle: pick(sums.middle, 3),
     p: pick(sums.p, 1),
@@ -209,6 +221,7 @@ function onlyFilled(sums: EnergySums): EnergySums {
     t: pick(sums.t, 6),
     wanted: pick(sums.wanted, 1),
   };
+  return { sums: filled, kept: Int32Array.from(keep) };
 }
 
 /** Relative spread of the wanted energy within layers (or over everything) of the directions that remain free. */

@@ -83,8 +83,12 @@ export function snapKeepingLength(frame: Frame, direction: Vector, length: numbe
   while (snapped() > length * length * (1 + 1e-12)) {
     const sizes = whole.map((m, a) => Math.abs(m) * units[a]!);
     const axis = sizes.indexOf(Math.max(...sizes));
-    if (periodic === 2 && Math.abs(whole[axis]!) === 1 && whole[1 - axis] === 0) break;
     whole[axis]! -= Math.sign(whole[axis]!);
+    if (periodic === 2 && whole[0] === 0 && whole[1] === 0) {
+      const other = units[1 - axis]! < units[axis]! ? 1 - axis : axis;
+      whole[other] = c[other]! < 0 ? -1 : 1;
+      if (other === axis) break;
+    }
   }
   const free = c.slice(periodic);
   const freeLength = Math.hypot(...free);

@@ -29,9 +29,16 @@ export interface Calibration {
   readonly after: { readonly rms: number; readonly largest: number };
 }
 
-/** Weight of |grad v|^2 (made dimensionless by the grid) against squared residuals. */
-const penalty = 1e-6;
+/**
+ * Weight of |grad v|^2 (made dimensionless by the grid) against squared residuals. Splines have more unknowns than there
+ * are windows: the penalty decides what the windows leave open.
+ */
+const penalties = { constant: 0, layers: 1e-6, windows: 1e-6 } as const;
+/** Ridge of the steps: splines at the rim of the mesh are hardly seen by any window. */
+const ridges = { constant: 1e-12, layers: 1e-9, windows: 1e-3 } as const;
 const steps = 30;
+/** rms residual at which the fit is good enough. */
+const fine = 1e-4;
 
 interface Assembled {
   readonly residual: Float64Array;
@@ -43,28 +50,28 @@ interface Assembled {
  * Gauss-Newton on the residuals ln(k_found / k) of the windows, with a weak penalty on grad v.
  *
  * @param field    its `values` are the start and are replaced
- * @param weights  box -> windows: the windows in which a box counts; layers count each box once
+ * @param windowOf  box -> window over which the energy is averaged; absent: every box is one
  */
-export function fitMultiplier(field: MultiplierField, sums: EnergySums): Calibration {
-  const unknowns = field.values.length;
+export function fitMultiplier(field: MultiplierField, sums: EnergySums, windowOf?: Int32Array): Calibration {
   const bases: Basis[] = [];
   for (let b = 0; b < sums.boxes; b++) {
     const basis = createBasis();
     basisAt(field, sums.middle[3 * b]!, sums.middle[3 * b + 1]!, sums.middle[3 * b + 2]!, basis);
     bases.push(basis);
   }
-  const own = field.kind === 'windows';
-  const windows = own ? unknowns : sums.boxes;
+  const windows = windowOf === undefined ? sums.boxes : windowOf.reduce((m, w) => Math.max(m, w), -1) + 1;
   const wanted = new Float64Array(windows);
   const total = sums.wanted.reduce((a, b) => a + b, 0);
   for (let b = 0; b < sums.boxes; b++) {
-    if (!own) wanted[b] = sums.wanted[b]!;
-    else
-      for (let i = 0; i < bases[b]!.count; i++) wanted[bases[b]!.index[i]!]! += bases[b]!.value[i]! * sums.wanted[b]!;
+    wanted[windowOf?.[b] ?? b]! += sums.wanted[b]!;
   }
-  // Windows that hold next to nothing have no say.
-  const heard = wanted.map((w) => (w > 1e-9 * (total / windows) ? 1 : 0));
+  // Windows that hold next to nothing (corners of the grid outside the mesh) have little or no say; layers all have theirs.
+  const mean = total / windows;
+  const heard = wanted.map((w) =>
+    w > 1e-9 * mean ? (windowOf === undefined ? 1 : Math.min(1, (w / (0.3 * mean)) ** 0.5)) : 0,
+  );
   const length2 = gridLength2(field);
+  const penalty = penalties[field.kind];
 
   const assemble = (values: Float64Array, withRows: boolean): Assembled => {
     const found = new Float64Array(windows);
@@ -94,23 +101,18 @@ export function fitMultiplier(field: MultiplierField, sums: EnergySums): Calibra
       const dx = c2 * (qx + 2 * tx);
       const dy = c2 * (qy + 2 * ty);
       const dz = c2 * (qz + 2 * tz);
-      const inWindows = own ? basis.count : 1;
-      for (let w = 0; w < inWindows; w++) {
-        const window = own ? basis.index[w]! : b;
-        const part = own ? basis.value[w]! : 1;
-        found[window]! += part * energy;
-        if (!withRows) continue;
-        const list = lists[window]!;
-        for (let i = 0; i < basis.count; i++) {
-          const slope =
-            part *
-            (2 * energy * basis.value[i]! +
-              dx * basis.gradient[3 * i]! +
-              dy * basis.gradient[3 * i + 1]! +
-              dz * basis.gradient[3 * i + 2]!);
-          const column = basis.index[i]!;
-          list.set(column, (list.get(column) ?? 0) + slope);
-        }
+      const window = windowOf?.[b] ?? b;
+      found[window]! += energy;
+      if (!withRows) continue;
+      const list = lists[window]!;
+      for (let i = 0; i < basis.count; i++) {
+        const slope =
+          2 * energy * basis.value[i]! +
+          dx * basis.gradient[3 * i]! +
+          dy * basis.gradient[3 * i + 1]! +
+          dz * basis.gradient[3 * i + 2]!;
+        const column = basis.index[i]!;
+        list.set(column, (list.get(column) ?? 0) + slope);
       }
     }
     const residual = new Float64Array(windows);
@@ -118,7 +120,7 @@ export function fitMultiplier(field: MultiplierField, sums: EnergySums): Calibra
     for (let w = 0; w < windows; w++) {
       if (heard[w] === 0) continue;
       residual[w] = found[w]! > 0 ? Math.log(found[w]! / wanted[w]!) : 0;
-      objective += residual[w]! ** 2;
+      objective += (heard[w]! * residual[w]!) ** 2;
     }
     for (let b = 0; b < sums.boxes; b++) {
       const basis = bases[b]!;
@@ -139,7 +141,7 @@ export function fitMultiplier(field: MultiplierField, sums: EnergySums): Calibra
       let at = offsets[w]!;
       for (const [column, slope] of lists[w]!) {
         columns[at] = column;
-        slopes[at] = found[w]! > 0 ? slope / found[w]! : 0;
+        slopes[at] = found[w]! > 0 ? (heard[w]! * slope) / found[w]! : 0;
         at++;
       }
     }
@@ -164,14 +166,22 @@ export function fitMultiplier(field: MultiplierField, sums: EnergySums): Calibra
   let state = assemble(values, true);
   const before = measure(state.residual);
   let iterations = 0;
-  for (; iterations < steps; iterations++) {
-    const step = solveNormal(state.rows, state.residual, bases, penalty * length2, values);
+  for (; iterations < steps && before.largest > 1e-12; iterations++) {
+    if (state.objective < fine * fine * windows) break;
+    const step = solveNormal(
+      state.rows,
+      state.residual.map((r, w) => heard[w]! * r),
+      bases,
+      penalty * length2,
+      values,
+      ridges[field.kind],
+    );
     let length = 1;
     let trial = values;
     let next = state.objective;
-    // Steps longer than a factor e in c^2 leave the range in which the quadratic model holds.
+    // Steps longer than a factor e^2 in c leave the range in which the quadratic model holds.
     const longest = step.reduce((m, s) => Math.max(m, Math.abs(s)), 0);
-    if (longest > 1) length = 1 / longest;
+    if (longest > 2) length = 2 / longest;
     for (let halving = 0; halving < 12; halving++) {
       trial = values.map((v, i) => v + length * step[i]!);
       next = assemble(trial, false).objective;
@@ -186,7 +196,7 @@ export function fitMultiplier(field: MultiplierField, sums: EnergySums): Calibra
   }
   return {
     field: { ...field, values },
-    windows: heard.reduce((a, b) => a + b, 0),
+    windows: heard.reduce((a, h) => a + (h > 0 ? 1 : 0), 0),
     iterations,
     before,
     after: measure(state.residual),

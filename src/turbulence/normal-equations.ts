@@ -16,6 +16,7 @@ const denseLimit = 600;
  *
  * @param bases  gradient of the unknown function at the boxes
  * @param mu     weight of the gradients, m2
+ * @param ridge  weight of |s|^2, share of the largest diagonal: keeps steps short along what no residual sees
  */
 export function solveNormal(
   jacobian: SparseRows,
@@ -23,6 +24,7 @@ export function solveNormal(
   bases: readonly Basis[],
   mu: number,
   values: Float64Array,
+  ridge: number,
 ): Float64Array {
   const n = values.length;
   const rightSide = new Float64Array(n);
@@ -39,7 +41,7 @@ export function solveNormal(
   }
   const diagonal = new Float64Array(n);
   for (let j = 0; j < jacobian.values.length; j++) diagonal[jacobian.columns[j]!]! += jacobian.values[j]! ** 2;
-  const tiny = 1e-9 * Math.max(1e-30, ...diagonal);
+  const tiny = ridge * Math.max(1e-30, ...diagonal);
   if (n <= denseLimit) {
     const matrix = new Float64Array(n * n);
     for (let r = 0; r < rows; r++)

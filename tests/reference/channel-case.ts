@@ -24,7 +24,7 @@ export function channelCase(
   refinement: number,
   subgrid: 'model' | 'none' = 'model',
   warp = 0,
-  wallLengthFactor = 2.5,
+  wallLengthFactor = 1,
 ): ChannelCase {
   const stretch = (s: number): number => 0.5 + Math.tanh(refinement * (2 * s - 1)) / (2 * Math.tanh(refinement));
   const same = (s: number): number => s;

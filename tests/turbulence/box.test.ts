@@ -6,11 +6,11 @@ import { synthesiseRange } from '../../src/turbulence/synthesis.js';
 import { weighRange } from '../../src/turbulence/weights.js';
 import { brickMesh, covarianceOf, energyOf, superimpose, synthesise } from './fields.js';
 
-const box = brickMesh([24, 24, 24], ['x', 'y', 'z'], { lengths: [1, 1, 1] });
+const box = brickMesh([32, 32, 32], ['x', 'y', 'z'], { lengths: [1, 1, 1] });
 
 function planOf(seed: number, covariance?: Float64Array) {
   const scales = localScales(
-    { cells: box.mesh.cellCount, k: 1.5, integralScale: 0.1067 },
+    { cells: box.mesh.cellCount, k: 1.5, integralScale: 0.08 },
     { spectrum: vonKarmanPao, subgrid: 'model', wallLengthFactor: 1.5 },
   );
   return prepareFluctuations({
