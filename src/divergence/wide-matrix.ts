@@ -101,7 +101,7 @@ function ownEntries(
  *
  * @param drop  couplings below this share of the root of the two diagonals are left out
  */
-export function wideMatrix(op: FaceOperator, drop = 0.02): SparseMatrix {
+export function wideMatrix(op: FaceOperator, drop = 0.002): SparseMatrix {
   const { cellCount, volumes } = op;
   const { starts, rows, vectors, mates } = cellColumns(op);
   const diagonal = new Float64Array(cellCount);
