@@ -61,10 +61,6 @@ export const fluctuations = z.strictObject({
     .max(100)
     .default(3)
     .describe('shortest wave laid on the mesh, in cells along it'),
-  'short-waves': z
-    .enum(['kept', 'dropped'])
-    .default('kept')
-    .describe('energy of resolvable waves shorter than that: put on the longer ones, or left out'),
   stretch: stretch.optional().describe('length scale longer in one direction'),
   zones: z.array(zone).default([]).describe('where to seed; everywhere by default'),
   calibrate: z
@@ -73,10 +69,6 @@ export const fluctuations = z.strictObject({
     .describe(
       'the multiplier of the potential meets the wanted k in this realisation, in the mean of all, or is left out',
     ),
-  homogeneous: z
-    .array(axis)
-    .optional()
-    .describe('directions over which the realisation is averaged for that; the periodic ones by default'),
   control: z
     .enum(['modes', 'potential', 'projection'])
     .default('projection')
