@@ -1,175 +1,103 @@
-import type { CellMesh, PeriodicPairs } from '../mesh/cell-mesh.js';
-import { type MeshEdges, meshEdges, periodicEdgeClasses } from './edges.js';
+import type { CellMesh } from '../mesh/cell-mesh.js';
+import { findEdges, type MeshEdges } from './edges.js';
 
-/** Points on edges at which a potential is wanted. */
+/** Places of the two Gauss points along an edge, as shares of its length. */
+export const gaussPlaces = [0.5 - Math.sqrt(3) / 6, 0.5 + Math.sqrt(3) / 6] as const;
+
+/** Edges worked on at a time: bounds the memory of points and potential. */
+const edgeBlock = 8192;
+
+/** Gauss points of a block of edges. */
 export interface EdgePoints {
-  readonly count: number;
-  /** 3 x count, metres. */
+  /** 3 x points, two an edge, metres. */
   readonly points: Float64Array;
-  /** Mesh points at the two ends of the edge on which each lies. */
-  readonly firstEnds: Int32Array;
-  readonly secondEnds: Int32Array;
-  /** Share of the way from the first to the second end, 0 to 1: for values interpolated between mesh points. */
-  readonly shares: Float64Array;
+  /** Point numbers of the edge's two ends, 2 x edges of the block. */
+  readonly ends: Int32Array;
 }
 
-/** Writes A (3 x count, m2/s) at the points; one value a place, whichever edge or face asks. */
-export type PotentialAt = (at: EdgePoints, out: Float64Array) => void;
+/**
+ * Fills in the vector potential at the Gauss points, 3 x points, m2/s. It must depend on nothing but the edge and the
+ * place on it: two Gauss points of one edge are asked for once, on behalf of all faces that share it.
+ */
+export type PotentialOnEdges = (block: EdgePoints, out: Float64Array) => void;
 
-const batchEdges = 4096;
-/** Gauss-Legendre with two points on [0, 1], exact for cubics (Abramowitz & Stegun 1964, table 25.4). */
-const gauss = [0.5 - Math.sqrt(1 / 12), 0.5 + Math.sqrt(1 / 12)] as const;
+function setGaussPoints(mesh: CellMesh, ends: Int32Array, out: Float64Array): void {
+  const { points } = mesh;
+  for (let e = 0; 2 * e < ends.length; e++) {
+    const p = 3 * ends[2 * e]!;
+    const q = 3 * ends[2 * e + 1]!;
+    for (let g = 0; g < 2; g++) {
+      const t = gaussPlaces[g as 0 | 1];
+      for (let c = 0; c < 3; c++) out[6 * e + 3 * g + c] = (1 - t) * points[p + c]! + t * points[q + c]!;
+    }
+  }
+}
 
 /**
- * Integrals of A . dl along every edge by two-point Gauss quadrature.
+ * Integral of A . dl along every edge, lower to higher point, by the two-point Gauss rule (exact for cubic A along the
+ * edge).
  *
- * @returns edges, m3/s, along the edge from its first to its second point
+ * @returns edges, m3/s
  */
-export function edgeIntegrals(mesh: CellMesh, edges: MeshEdges, potential: PotentialAt): Float64Array {
-  const out = new Float64Array(edges.count);
-  const points = new Float64Array(6 * batchEdges);
-  const firstEnds = new Int32Array(2 * batchEdges);
-  const secondEnds = new Int32Array(2 * batchEdges);
-  const shares = new Float64Array(2 * batchEdges);
-  const values = new Float64Array(6 * batchEdges);
-  for (let begin = 0; begin < edges.count; begin += batchEdges) {
-    const size = Math.min(batchEdges, edges.count - begin);
-    for (let e = 0; e < size; e += 1) {
-      const a = edges.points[2 * (begin + e)] as number;
-      const b = edges.points[2 * (begin + e) + 1] as number;
-      for (let g = 0; g < 2; g += 1) {
-        const at = 2 * e + g;
-        const share = gauss[g as 0];
-        firstEnds[at] = a;
-        secondEnds[at] = b;
-        shares[at] = share;
-        for (let c = 0; c < 3; c += 1) {
-          const from = mesh.points[3 * a + c] as number;
-          points[3 * at + c] = from + share * ((mesh.points[3 * b + c] as number) - from);
-        }
-      }
-    }
-    const count = 2 * size;
-    potential(
-      {
-        count,
-        points: points.subarray(0, 3 * count),
-        firstEnds: firstEnds.subarray(0, count),
-        secondEnds: secondEnds.subarray(0, count),
-        shares: shares.subarray(0, count),
-      },
-      values.subarray(0, 3 * count),
-    );
-    for (let e = 0; e < size; e += 1) {
-      const a = 3 * (edges.points[2 * (begin + e)] as number);
-      const b = 3 * (edges.points[2 * (begin + e) + 1] as number);
+export function edgeIntegrals(mesh: CellMesh, edges: MeshEdges, potential: PotentialOnEdges): Float64Array {
+  const { points } = mesh;
+  const integrals = new Float64Array(edges.count);
+  const places = new Float64Array(6 * Math.min(edgeBlock, edges.count));
+  const values = new Float64Array(places.length);
+  for (let first = 0; first < edges.count; first += edgeBlock) {
+    const count = Math.min(edgeBlock, edges.count - first);
+    const ends = edges.points.subarray(2 * first, 2 * (first + count));
+    const at = places.subarray(0, 6 * count);
+    const a = values.subarray(0, 6 * count);
+    setGaussPoints(mesh, ends, at);
+    potential({ points: at, ends }, a);
+    for (let e = 0; e < count; e++) {
+      const p = 3 * ends[2 * e]!;
+      const q = 3 * ends[2 * e + 1]!;
       let sum = 0;
-      for (let c = 0; c < 3; c += 1) {
-        const mean = 0.5 * ((values[6 * e + c] as number) + (values[6 * e + 3 + c] as number));
-        sum += mean * ((mesh.points[b + c] as number) - (mesh.points[a + c] as number));
-      }
-      out[begin + e] = sum;
+      for (let c = 0; c < 3; c++) sum += (points[q + c]! - points[p + c]!) * (a[6 * e + c]! + a[6 * e + 3 + c]!);
+      integrals[first + e] = sum / 2;
     }
   }
-  return out;
+  return integrals;
 }
 
 /**
- * Flux of u = curl A through every face by Stokes' theorem: the sum of A . dl around it, positive along the face's area
- * vector. A warped face is the fan of triangles about its centre, whose spokes are run through once in each direction
- * and drop out of the sum, so the fluxes need the outer edges only, hold for any surface spanned by them, and every edge
- * of a closed cell is met by two faces in opposite directions: the fluxes of each cell sum to zero for any integrals.
+ * Flux of curl A through every face: by Stokes' theorem the circulation of A round its rim. Every edge of a closed cell
+ * is run along twice, once each way, so the outward fluxes of any closed cell sum to zero whatever the quadrature. The
+ * spokes of a fan about a warped face's centre would be run along both ways within the face: they drop out, and the flux
+ * is that through any surface on the rim.
  *
- * @param integrals  edges, from `edgeIntegrals`
- * @returns faces, m3/s
+ * @param integrals  of `edgeIntegrals`
+ * @returns faces in the numbering of the mesh, m3/s, out of the owner
+ * @see Hirani 2003, Discrete Exterior Calculus (thesis, Caltech): the boundary of a boundary is empty
  */
-export function faceCirculations(mesh: CellMesh, edges: MeshEdges, integrals: Float64Array): Float64Array {
-  const { faceCount, faceOffsets, facePoints } = mesh;
-  const out = new Float64Array(faceCount);
-  for (let face = 0; face < faceCount; face += 1) {
+export function rimFluxes(mesh: CellMesh, edges: MeshEdges, integrals: Float64Array): Float64Array {
+  const { faceOffsets, facePoints, faceCount } = mesh;
+  const fluxes = new Float64Array(faceCount);
+  for (let f = 0; f < faceCount; f++) {
     let sum = 0;
-    const end = faceOffsets[face + 1] as number;
-    for (let i = faceOffsets[face] as number; i < end; i += 1) {
-      const edge = edges.faceEdges[i] as number;
-      const value = integrals[edge] as number;
-      sum += edges.points[2 * edge] === facePoints[i] ? value : -value;
+    for (let a = faceOffsets[f]!; a < faceOffsets[f + 1]!; a++) {
+      const edge = edges.ofCorner[a]!;
+      sum += facePoints[a] === edges.points[2 * edge] ? integrals[edge]! : -integrals[edge]!;
     }
-    out[face] = sum;
+    fluxes[f] = sum;
   }
-  return out;
+  return fluxes;
 }
 
-export interface CirculationFluxes {
-  /** Faces (mesh order: inner faces, then boundary faces), m3/s along the face's area vector. */
-  readonly fluxes: Float64Array;
-  /**
-   * Largest difference between the integral of an edge and that of the periodic edge that stands for it, over the rms
-   * integral: rounding when the potential is periodic. The integral of the standing edge is used for both.
-   */
-  readonly periodicMismatch: number;
+/** Fluxes of curl A through all faces, m3/s, out of the owner; see `rimFluxes`. */
+export function circulationFluxes(mesh: CellMesh, potential: PotentialOnEdges): Float64Array {
+  const edges = findEdges(mesh);
+  return rimFluxes(mesh, edges, edgeIntegrals(mesh, edges, potential));
 }
 
-/**
- * Face fluxes of a vector potential whose sum over every closed cell is zero to rounding, and equal on periodic mates.
- *
- * @param potential  called with batches of points on the edges
- */
-export function circulationFluxes(mesh: CellMesh, potential: PotentialAt, periodic?: PeriodicPairs): CirculationFluxes {
-  const edges = meshEdges(mesh);
-  const integrals = edgeIntegrals(mesh, edges, potential);
-  let periodicMismatch = 0;
-  if (periodic !== undefined) {
-    const { root, sign } = periodicEdgeClasses(mesh, edges, periodic);
-    let squares = 0;
-    for (let e = 0; e < edges.count; e += 1) {
-      squares += (integrals[e] as number) ** 2;
-      if (root[e] === e) continue;
-      const value = (sign[e] as number) * (integrals[root[e] as number] as number);
-      periodicMismatch = Math.max(periodicMismatch, Math.abs(value - (integrals[e] as number)));
-      integrals[e] = value;
-    }
-    periodicMismatch = squares > 0 ? periodicMismatch / Math.sqrt(squares / edges.count) : 0;
+/** Sum of the outward fluxes of every cell, m3/s. */
+export function netFluxes(mesh: CellMesh, fluxes: Float64Array): Float64Array {
+  const net = new Float64Array(mesh.cellCount);
+  for (let f = 0; f < mesh.faceCount; f++) {
+    net[mesh.owner[f]!]! += fluxes[f]!;
+    if (f < mesh.innerFaceCount) net[mesh.neighbour[f]!]! -= fluxes[f]!;
   }
-  return { fluxes: faceCirculations(mesh, edges, integrals), periodicMismatch };
-}
-
-/**
- * Net outward sum of face fluxes of every cell.
- *
- * @returns cells, m3/s
- */
-export function netFaceFluxes(mesh: CellMesh, fluxes: Float64Array): Float64Array {
-  const out = new Float64Array(mesh.cellCount);
-  for (let face = 0; face < mesh.faceCount; face += 1) {
-    const p = mesh.owner[face] as number;
-    out[p] = (out[p] as number) + (fluxes[face] as number);
-    if (face < mesh.innerFaceCount) {
-      const n = mesh.neighbour[face] as number;
-      out[n] = (out[n] as number) - (fluxes[face] as number);
-    }
-  }
-  return out;
-}
-
-/** Columns of `faceKeys`. */
-export const faceKeyColumns = 5;
-
-/**
- * What a reader of face fluxes needs to find each face in the data set: number of its owner cell and of its neighbour
- * (-1 at the boundary) in the data set's order of cells, and its first three points, from 0. The right-hand rule over
- * the points gives the direction in which the flux counts positive: out of the owner. Faces come in the mesh's order:
- * those between two cells first, then the boundary's, each in the order in which the cells first meet them.
- *
- * @returns 5 x faces
- */
-export function faceKeys(mesh: CellMesh): Int32Array {
-  const out = new Int32Array(faceKeyColumns * mesh.faceCount);
-  for (let face = 0; face < mesh.faceCount; face += 1) {
-    const at = faceKeyColumns * face;
-    out[at] = mesh.datasetCell[mesh.owner[face] as number] as number;
-    out[at + 1] = face < mesh.innerFaceCount ? (mesh.datasetCell[mesh.neighbour[face] as number] as number) : -1;
-    const begin = mesh.faceOffsets[face] as number;
-    for (let i = 0; i < 3; i += 1) out[at + 2 + i] = mesh.facePoints[begin + i] as number;
-  }
-  return out;
+  return net;
 }

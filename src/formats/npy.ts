@@ -1,90 +1,118 @@
-import { closeSync, fsyncSync, openSync, writeSync } from 'node:fs';
-import { readFile } from 'node:fs/promises';
+import { closeSync, openSync, readFileSync, writeSync } from 'node:fs';
+import type { NumberArray } from '../basis/dataset.js';
 import { InputError } from '../basis/errors.js';
 import { writeBeside } from '../basis/half-written.js';
 
-/** An array of an .npy file, rows one after the other (C order). */
+/** An array of an .npy file. */
 export interface NpyArray {
   readonly shape: readonly number[];
-  readonly values: Float64Array | Float32Array | Int32Array;
+  /** Last index fastest. */
+  readonly values: NumberArray;
 }
 
-const magic = Uint8Array.of(0x93, 0x4e, 0x55, 0x4d, 0x50, 0x59);
-const chunkBytes = 1 << 24;
+const magic = '\x93NUMPY';
 
-function descriptionOf(values: NpyArray['values']): string {
-  if (values instanceof Float64Array) return '<f8';
-  return values instanceof Float32Array ? '<f4' : '<i4';
+const arrayTypes = {
+  i1: Int8Array,
+  u1: Uint8Array,
+  i2: Int16Array,
+  u2: Uint16Array,
+  i4: Int32Array,
+  u4: Uint32Array,
+  i8: BigInt64Array,
+  u8: BigUint64Array,
+  f4: Float32Array,
+  f8: Float64Array,
+} as const;
+
+function descriptionOf(values: NumberArray): string {
+  const entry = Object.entries(arrayTypes).find(([, type]) => values instanceof type);
+  const code = entry?.[0] ?? 'f8';
+  return `${values.BYTES_PER_ELEMENT === 1 ? '|' : '<'}${code}`;
 }
 
-/** Head of an .npy file, format version 1.0: magic, lengths and the dictionary padded so that data begin on a multiple of 64. */
-function headOf({ shape, values }: NpyArray): Uint8Array {
-  const sizes = shape.length === 1 ? `${shape[0]},` : shape.join(', ');
-  const dictionary = `{'descr': '${descriptionOf(values)}', 'fortran_order': False, 'shape': (${sizes}), }`;
-  const used = 10 + dictionary.length + 1;
-  const text = `${dictionary}${' '.repeat((64 - (used % 64)) % 64)}\n`;
-  const head = new Uint8Array(10 + text.length);
-  head.set(magic);
-  head.set([1, 0, text.length & 255, text.length >> 8], 6);
-  head.set(new TextEncoder().encode(text), 10);
-  return head;
+/** Header of version 1.0, padded so that the numbers begin on a multiple of 64 bytes. */
+function headerOf(values: NumberArray, shape: readonly number[]): Buffer {
+  const tuple = shape.length === 1 ? `(${shape[0]},)` : `(${shape.join(', ')})`;
+  const text = `{'descr': '${descriptionOf(values)}', 'fortran_order': False, 'shape': ${tuple}, }`;
+  const fixed = magic.length + 4;
+  const total = Math.ceil((fixed + text.length + 1) / 64) * 64;
+  const header = Buffer.alloc(total, ' ');
+  header.write(magic, 0, 'latin1');
+  header[6] = 1;
+  header[7] = 0;
+  header.writeUInt16LE(total - fixed, 8);
+  header.write(text, fixed, 'latin1');
+  header[total - 1] = 0x0a;
+  return header;
 }
 
 /**
- * Writes an array as NPY format version 1.0, little-endian, C order (NumPy Enhancement Proposal 1). The file appears
- * under its name only when complete.
+ * Writes an array in the NPY format, version 1.0, little endian, last index fastest.
  *
- * @throws RangeError when the shape does not fit the number of values
+ * @param shape  default one dimension
+ * @throws MachineError or a file-system error when the place cannot be written
+ * @see NumPy Enhancement Proposal 1 (the format)
  */
-export async function writeNpy(path: string, array: NpyArray): Promise<void> {
-  const { shape, values } = array;
-  const expected = shape.reduce((product, size) => product * size, 1);
-  if (expected !== values.length)
-    throw new RangeError(`shape ${shape.join(' x ')} holds ${expected}, not ${values.length} values`);
-  const head = headOf(array);
+export async function writeNpy(
+  path: string,
+  values: NumberArray,
+  shape: readonly number[] = [values.length],
+): Promise<void> {
+  const size = shape.reduce((product, n) => product * n, 1);
+  if (size !== values.length) {
+    throw new InputError({ file: path, cause: `${values.length} numbers do not fill the shape ${shape.join(' x ')}` });
+  }
   await writeBeside(path, (temporary) => {
     const file = openSync(temporary, 'w');
     try {
-      for (const part of [head, new Uint8Array(values.buffer, values.byteOffset, values.byteLength)]) {
+      const bytes = new Uint8Array(values.buffer, values.byteOffset, values.byteLength);
+      for (const part of [headerOf(values, shape), bytes]) {
         let at = 0;
-        while (at < part.length) at += writeSync(file, part, at, Math.min(chunkBytes, part.length - at));
+        while (at < part.byteLength) at += writeSync(file, part, at, Math.min(1 << 26, part.byteLength - at));
       }
-      fsyncSync(file);
     } finally {
       closeSync(file);
     }
   });
 }
 
+function fault(file: string, cause: string): InputError {
+  return new InputError({ file, cause, remedy: 'write it anew as a plain numeric array (NPY 1.0 to 3.0)' });
+}
+
 /**
- * Reads an .npy file of format version 1.0, 2.0 or 3.0 with little-endian Float64, Float32 or Int32 values in C order.
+ * Reads an NPY file of numbers, versions 1.0 to 3.0, little endian, last index fastest.
  *
- * @throws InputError for anything else, or when the file is cut short
+ * @throws InputError for anything else
  */
-export async function readNpy(path: string): Promise<NpyArray> {
-  const bytes = await readFile(path);
-  const refuse = (cause: string, remedy = 'save it with numpy.save as a C-ordered little-endian array'): never => {
-    throw new InputError({ file: path, cause, remedy });
-  };
-  if (bytes.length < 12 || magic.some((byte, i) => bytes[i] !== byte)) refuse('this is not an .npy file');
-  const long = (bytes[6] as number) > 1;
-  const begin = long ? 12 : 10;
-  const size = long ? bytes.readUInt32LE(8) : bytes.readUInt16LE(8);
-  const text = bytes.toString('latin1', begin, begin + size);
-  const type = /'descr':\s*'([^']*)'/.exec(text)?.[1] ?? '';
-  const order = /'fortran_order':\s*(True|False)/.exec(text)?.[1];
-  const sizes = /'shape':\s*\(([^)]*)\)/.exec(text)?.[1];
-  if (order === undefined || sizes === undefined || bytes.length < begin + size) refuse('its head cannot be read');
-  if (order === 'True') refuse('its values are in Fortran order');
-  const shape = (sizes ?? '').split(',').flatMap((part) => (part.trim() === '' ? [] : [Number(part)]));
-  const count = shape.reduce((product, n) => product * n, 1);
-  const width = type === '<f8' ? 8 : 4;
-  if (!['<f8', '<f4', '<i4'].includes(type)) refuse(`values of type ${type} are not read`);
-  const data = begin + size;
-  if (bytes.length < data + count * width) {
-    refuse(`it holds ${bytes.length - data} of ${count * width} bytes of values`, 'copy the file again');
+export function readNpy(path: string): NpyArray {
+  const bytes = readFileSync(path);
+  if (bytes.length < 12 || bytes.toString('latin1', 0, 6) !== magic) throw fault(path, 'this is no NPY file');
+  const version = bytes[6]!;
+  if (version < 1 || version > 3) throw fault(path, `NPY version ${version} is not known`);
+  const begin = version === 1 ? 10 : 12;
+  const end = begin + (version === 1 ? bytes.readUInt16LE(8) : bytes.readUInt32LE(8));
+  if (end > bytes.length) throw fault(path, 'the file ends within its header');
+  const header = bytes.toString('latin1', begin, end);
+  const type = /'descr':\s*'([<|=])([iuf][1248])'/.exec(header)?.[2];
+  const shapeText = /'shape':\s*\(([\d\s,]*)\)/.exec(header)?.[1];
+  const create = type === undefined ? undefined : (arrayTypes as Partial<Record<string, unknown>>)[type];
+  if (type === undefined || create === undefined || shapeText === undefined) {
+    throw fault(path, `its header ${header.trim()} describes no little-endian numbers`);
   }
-  const copy = Uint8Array.prototype.slice.call(bytes, data, data + count * width).buffer as ArrayBuffer;
-  if (type === '<f8') return { shape, values: new Float64Array(copy) };
-  return { shape, values: type === '<f4' ? new Float32Array(copy) : new Int32Array(copy) };
+  if (!/'fortran_order':\s*False/.test(header)) throw fault(path, 'its numbers are stored first index fastest');
+  const shape = shapeText
+    .split(',')
+    .map((part) => part.trim())
+    .filter((part) => part !== '')
+    .map(Number);
+  const length = shape.reduce((product, n) => product * n, 1);
+  const ArrayType = arrayTypes[type as keyof typeof arrayTypes];
+  const wanted = length * ArrayType.BYTES_PER_ELEMENT;
+  if (bytes.length - end !== wanted) {
+    throw fault(path, `${bytes.length - end} bytes of numbers where the shape (${shapeText}) needs ${wanted}`);
+  }
+  const own = new Uint8Array(bytes.subarray(end)).buffer;
+  return { shape, values: new ArrayType(own, 0, length) };
 }
