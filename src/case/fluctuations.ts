@@ -1,5 +1,5 @@
 import { z } from 'zod';
-import { axis, direction, path } from './parts.js';
+import { direction, path } from './parts.js';
 import { zone } from './zones.js';
 
 const energy = z

@@ -1,6 +1,7 @@
 import type { Command } from 'commander';
 import { addAppraise } from './appraise.js';
 import { addAudit } from './audit.js';
+import { addBatch } from './batch.js';
 import { addDescribe } from './describe.js';
 import { addFluctuate } from './fluctuate.js';
 import { addFollowup } from './followup.js';
@@ -15,6 +16,7 @@ export function addCommands(program: Command): void {
   addFluctuate(program);
   addAppraise(program);
   addAudit(program);
+  addBatch(program);
   addFollowup(program);
   addDescribe(program);
   addInit(program);

@@ -359,7 +359,9 @@ export async function fluctuateFields(
   figures.coarseCells = coarse;
   if (clipped > 0) assumptions.push(`${clipped} stress tensors that no velocity can have were clipped.`);
   if (coarse > 0) {
-    assumptions.push(`On ${coarse} cells no wave is long enough to be seeded; their energy is left to the model.`);
+    assumptions.push(
+      `On ${coarse} cells hardly any wave is long enough to be seeded; part of their energy is left to the model.`,
+    );
   }
   if (seeding === undefined && request.walls.length === 0) assumptions.push('No walls are named: none is respected.');
   const total = scales.k;

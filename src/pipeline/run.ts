@@ -202,6 +202,14 @@ async function withWorkers<T>(count: number | undefined, work: (workers: Workers
  */
 export async function runCase(given: ResolvedCase, options: RunOptions): Promise<RunResult> {
   const { progress } = options;
+  if (given.targets !== undefined || given.snapshots !== undefined) {
+    throw new InputError({
+      file: given.file,
+      place: given.targets === undefined ? 'snapshots' : 'targets',
+      cause: 'this case is a batch of several starts',
+      remedy: 'use eddygraft batch',
+    });
+  }
   const overwrite = options.overwrite === true;
   const { fluctuations: settings } = given;
   const seed = settings === 'none' ? null : (options.seed ?? settings.seed);
