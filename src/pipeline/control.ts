@@ -1,4 +1,5 @@
 import { componentRms, type DivergenceFigures, divergenceFigures } from '../audit/divergence-figures.js';
+import { InputError } from '../basis/errors.js';
 import type { ProjectionSettings } from '../case/schema.js';
 import type { Hierarchy } from '../divergence/aggregation.js';
 import { boundaryCode, createFaceOperator, divergence, type FaceOperator } from '../divergence/face-operator.js';
@@ -54,6 +55,33 @@ function heldFluxesOf(op: FaceOperator, target: Target, velocity: Float64Array):
       flux += (target.geometry.faceAreas[3 * face + c] as number) * (velocity[3 * cell + c] as number);
     }
     return flux;
+  });
+}
+
+/**
+ * Held fluxes must balance where no boundary is free: the boundaries and their fluxes are named.
+ *
+ * @throws InputError
+ */
+function _requireBalance(op: FaceOperator, target: Target, fluxes: Float64Array): void {
+  if (op.freeCells.length > 0) return;
+  let net = 0;
+  let size = 0;
+  const byName = new Map<string, number>();
+  op.heldFaces.forEach((face, i) => {
+    const flux = fluxes[i] as number;
+    const name = target.mesh.patches.find((patch) => patch.faces.includes(face))?.name ?? 'unnamed faces';
+    byName.set(name, (byName.get(name) ?? 0) + flux);
+    net += flux;
+    size += Math.abs(flux);
+  });
+  if (Math.abs(net) <= 1e-9 * size) return;
+  const list = [...byName].map(([name, flux]) => `${name} ${flux.toExponential(3)}`).join(', ');
+  throw new InputError({
+    file: target.file,
+    place: 'projection.hold-flux',
+    cause: `the held fluxes do not balance (${list} m3/s, net ${net.toExponential(3)}) and no boundary is free`,
+    remedy: 'leave one boundary, for example the outflow, out of hold-flux',
   });
 }
 

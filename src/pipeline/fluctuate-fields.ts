@@ -7,6 +7,7 @@ import { createGradient } from '../mesh/gradient.js';
 import { prepareWallDistance } from '../mesh/wall-distance.js';
 import { calibrate } from '../turbulence/calibrate.js';
 import { compensate } from '../turbulence/compensate.js';
+import type { MultiplierField } from '../turbulence/multiplier-field.js';
 import { cellFlag, type FluctuationPlan } from '../turbulence/plan.js';
 import { prepareFluctuations } from '../turbulence/prepare.js';
 import { type CellValue, type LocalScales, localScales, type ScaleInput } from '../turbulence/scales.js';
@@ -47,6 +48,8 @@ export interface FluctuationResult {
   readonly modelled: Float64Array;
   readonly resolvableShare: Float64Array;
   readonly wallDistance?: Float64Array;
+  /** The multiplier of the potential, when this realisation was calibrated. */
+  readonly multiplier?: MultiplierField;
   readonly assumptions: readonly string[];
   readonly figures: Readonly<Record<string, unknown>>;
 }
@@ -338,6 +341,7 @@ export async function fluctuateFields(
   await timed(progress, timings, 'synthesis', cells, () =>
     workers.overRanges('synthesise', { plan, out }, cells, progress),
   );
+  let multiplier: MultiplierField | undefined;
   if (withMultiplier && settings.calibrate === 'realisation') {
     const { field, ...found } = await timed(progress, timings, 'calibrate', 0, () =>
       calibrate({
@@ -348,6 +352,7 @@ export async function fluctuateFields(
         integralScale: scales.integralScale,
       }),
     );
+    multiplier = field;
     figures.calibration = found;
     assumptions.push(`This realisation's energy was set over ${found.averagedOver}.`);
     const payload = { field: shareDeep(field), centroids: geometry.cellCentroids, out };
@@ -376,6 +381,7 @@ export async function fluctuateFields(
     modelled,
     resolvableShare: plan.resolvableShare,
     ...(wallDistance === undefined ? {} : { wallDistance }),
+    ...(multiplier === undefined ? {} : { multiplier }),
     assumptions,
     figures,
   };

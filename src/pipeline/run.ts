@@ -5,10 +5,12 @@ import { InputError } from '../basis/errors.js';
 import { type Field, sharedFloat64 } from '../basis/fields.js';
 import { requireFree, writeFileBeside } from '../basis/half-written.js';
 import type { ResolvedCase } from '../case/read-case.js';
+import { writeNpy } from '../formats/npy.js';
 import { formatToWrite } from '../formats/registry.js';
 import { cellWidths } from '../mesh/cell-width.js';
 import type { Controlled } from './control.js';
 import { controlDivergence } from './control.js';
+import { faceFluxes } from './face-fluxes.js';
 import { type FluctuationResult, fluctuateFields } from './fluctuate-fields.js';
 import { type CheckResult, type Manifest, peakMemoryBytes, stampFile } from './manifest.js';
 import { placedPrecursor } from './placed-precursor.js';
@@ -186,6 +188,28 @@ export function scaledFields(
   };
 }
 
+/** Circulation fluxes where the case asks for them. */
+async function circulationOf(
+  given: ResolvedCase,
+  target: Target,
+  walls: Int32Array,
+  fluctuations: FluctuationResult | undefined,
+  progress: Progress,
+  timings: Map<string, number>,
+): Promise<Float64Array | undefined> {
+  if (given.output['face-fluxes'] === undefined) return undefined;
+  if (fluctuations === undefined || fluctuations.plan.grade === 'modes') {
+    throw new InputError({
+      file: given.file,
+      place: 'output.face-fluxes',
+      cause: 'circulation fluxes need a vector potential, and this case has none',
+      remedy: 'choose control: potential or projection, or leave face-fluxes out',
+    });
+  }
+  const { plan, multiplier } = fluctuations;
+  return timed(progress, timings, 'face fluxes', 0, () => faceFluxes(target, plan, multiplier, walls));
+}
+
 async function withWorkers<T>(count: number | undefined, work: (workers: Workers) => Promise<T>): Promise<T> {
   const workers = openWorkers(count);
   try {
@@ -322,13 +346,20 @@ export async function runCase(given: ResolvedCase, options: RunOptions): Promise
       fields: start.fields,
     };
     if (options.dryRun === true) return { ...results, manifest: build([]) };
+    const fluxes = await circulationOf(given, target, walls, fluctuations, progress, timings);
     await timed(progress, timings, 'write start', 0, () =>
       writeStart(given.output.file, target.dataset, target.mesh, start.fields, JSON.stringify(provenance), {
         numberType: given.output['number-type'],
         compress: given.output.compress,
+        ...(fluxes === undefined ? {} : { faceFluxes: fluxes }),
       }),
     );
     const written = [await stampFile(given.output.file)];
+    const fluxFile = given.output['face-fluxes'];
+    if (fluxes !== undefined && fluxFile !== undefined) {
+      await writeNpy(fluxFile, fluxes);
+      written.push(await stampFile(fluxFile));
+    }
     const { report } = given.output;
     if (report !== undefined && options.report !== undefined) {
       const render = options.report;

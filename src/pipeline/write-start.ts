@@ -1,6 +1,8 @@
+import { extname } from 'node:path';
 import type { DataArray, Dataset } from '../basis/dataset.js';
 import type { Field, Fields } from '../basis/fields.js';
 import { fieldsToArrays } from '../basis/quantities.js';
+import { writeCgns } from '../formats/cgns.js';
 import { writeDataset } from '../formats/registry.js';
 import type { CellMesh } from '../mesh/cell-mesh.js';
 
@@ -54,14 +56,25 @@ export async function writeStart(
   mesh: CellMesh,
   fields: Fields,
   provenance: string,
-  options: { readonly numberType?: 'Float64' | 'Float32'; readonly compress?: boolean } = {},
+  options: {
+    readonly numberType?: 'Float64' | 'Float32';
+    readonly compress?: boolean;
+    /** Volume flux of the fluctuation through every face, m3/s; formats that know faces carry it. */
+    readonly faceFluxes?: Float64Array;
+  } = {},
 ): Promise<void> {
-  const { numberType = 'Float64', compress = false } = options;
-  await writeDataset(path, {
+  const { numberType = 'Float64', compress = false, faceFluxes } = options;
+  const request = {
     mesh: dataset,
     cellArrays: cellArraysOf(dataset, mesh, fields, numberType),
     pointArrays: [],
     notes: new Map([...dataset.notes, [provenanceNote, provenance]]),
     compress,
-  });
+  };
+  if (faceFluxes !== undefined && extname(path).toLowerCase() === '.cgns') {
+    const flux = { name: 'VolumeFlux', values: faceFluxes, signed: true, exponents: [0, 3, -1, 0, 0] as const };
+    await writeCgns(path, request, { mesh, arrays: [flux] });
+    return;
+  }
+  await writeDataset(path, request);
 }
