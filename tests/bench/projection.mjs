@@ -1,77 +1,18 @@
 // Iterations and seconds of the projection of white noise by six decades on n^3 hexahedra, periodic in x and z with
 // walls across y: node tests/bench/projection.mjs [n,n,...] [dist]
-import { resolve } from 'node:path';
 import { performance } from 'node:perf_hooks';
-import { pathToFileURL } from 'node:url';
-import seedrandom from 'seedrandom';
+import { loader, openBox, refined, straight, whiteNoise } from './box-mesh.mjs';
 
 const sizes = (process.argv[2] ?? '32,64').split(',').map(Number);
-const dist = resolve(process.argv[3] ?? 'dist');
-const load = (path) => import(pathToFileURL(`${dist}/${path}`).href);
-const { structuredCells } = await load('mesh/structured.js');
-const { buildMesh } = await load('mesh/build.js');
-const { measureMesh } = await load('mesh/geometry.js');
-const { matchPeriodic } = await load('mesh/periodic.js');
+const load = loader(process.argv[3] ?? 'dist');
 const { createFaceOperator, divergence } = await load('divergence/face-operator.js');
 const { buildPreconditioner, project } = await load('divergence/projection.js');
 const { componentRms, divergenceFigures } = await load('audit/divergence-figures.js');
 
-const straight = (s) => s;
-const refined = (s) => 0.5 + Math.tanh(2 * (2 * s - 1)) / (2 * Math.tanh(2));
-
-/** Points of n^3 bricks; inner points move by at most `warp` of the spacing, alike at both ends of a period. */
-function boxPoints(n, across, warp) {
-  const draw = seedrandom('warp');
-  const moves = Float64Array.from({ length: 3 * (n + 1) ** 3 }, () => warp * (2 * draw() - 1));
-  const points = new Float64Array(moves.length);
-  let at = 0;
-  for (let k = 0; k <= n; k++)
-    for (let j = 0; j <= n; j++)
-      for (let i = 0; i <= n; i++) {
-        const from = 3 * ((i % n) + (n + 1) * (j + (n + 1) * (k % n)));
-        const place = (s, move, index, stretch) => {
-          const spacing = stretch(Math.min(1, (index + 1) / n)) - stretch(index / n) || 1 / n;
-          return stretch(s) + (index === 0 || index === n ? 0 : move * spacing);
-        };
-        points[at++] = place(i / n, moves[from], i, straight);
-        points[at++] = place(j / n, moves[from + 1], j, across);
-        points[at++] = place(k / n, moves[from + 2], k, straight);
-      }
-  return points;
-}
-
-function openBox(n, across, warp) {
-  const structure = { kind: 'curvilinear', extent: [0, n, 0, n, 0, n] };
-  const points = boxPoints(n, across, warp);
-  const cells = structuredCells(structure);
-  const zone = { name: 'box', pointBegin: 0, pointEnd: points.length / 3, cellBegin: 0, cellEnd: n ** 3 };
-  const mesh = buildMesh({
-    file: 'box',
-    format: 'vts',
-    points,
-    pointType: 'Float64',
-    cells,
-    pointArrays: [],
-    cellArrays: [],
-    zones: [zone],
-    boundaries: [],
-    missingAxes: [],
-    notes: new Map(),
-    remarks: [],
-  });
-  const geometry = measureMesh(mesh);
-  return { mesh, geometry, periodic: matchPeriodic(mesh, geometry, ['x', 'z'], 'box') };
-}
-
-function whiteNoise(length) {
-  const draw = seedrandom('noise');
-  return Float64Array.from({ length }, () => Math.sqrt(-2 * Math.log(1 - draw())) * Math.cos(2 * Math.PI * draw()));
-}
-
 const kinds = [
   ['uniform', straight, 0],
-  ['refined to the walls, warped 5 %', refined, 0.05],
-  ['refined to the walls, warped 20 %', refined, 0.2],
+  ['refined to the walls, warped 5 %', refined(2), 0.05],
+  ['refined to the walls, warped 20 %', refined(2), 0.2],
 ];
 process.stdout.write(
   '| cells | mesh | iterations | prepare, s | project, s | scaled divergence before | after | energy lost |\n',
@@ -79,9 +20,9 @@ process.stdout.write(
 process.stdout.write('| --- | --- | --- | --- | --- | --- | --- | --- |\n');
 for (const n of sizes)
   for (const [name, across, warp] of kinds) {
-    const { mesh, geometry, periodic } = openBox(n, across, warp);
+    const { mesh, geometry, periodic } = await openBox(load, [n, n, n], [1, 1, 1], across, warp);
     const op = createFaceOperator(mesh, geometry, { periodic });
-    const u = whiteNoise(3 * mesh.cellCount);
+    const u = whiteNoise(3 * mesh.cellCount, 'noise');
     const start = performance.now();
     const hierarchy = buildPreconditioner(op);
     const middle = performance.now();
