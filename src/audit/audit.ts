@@ -1,5 +1,7 @@
 import type { CellMesh, MeshGeometry, PeriodicPairs } from '../mesh/cell-mesh.js';
 import { componentRms, type DivergenceFigures } from './divergence-figures.js';
+import { type LineFigures, lineFigures } from './line-figures.js';
+import { type CellZones, type ZoneFigures, zoneFigures } from './zone-figures.js';
 
 /** What is measured; the arrays of a finished start. */
 export interface AuditInput {
@@ -19,6 +21,15 @@ export interface AuditInput {
   readonly divergenceBefore?: DivergenceFigures | undefined;
   readonly divergenceAfter: DivergenceFigures;
   readonly projectionLoss?: number | undefined;
+  /** The operator by which divergence and loss were measured; default interpolated faces, weights by distance. */
+  readonly operator?: string | undefined;
+  /** 6 x cells, wanted covariances, m2/s2. */
+  readonly covarianceWanted?: Float64Array | undefined;
+  /** 3 x cells: the fluctuation before control, for the flux through boundaries. */
+  readonly fluctuationBefore?: Float64Array | undefined;
+  readonly zones?: CellZones | undefined;
+  /** cells: |div u| CellWidth / u_rms after control, for the zones. */
+  readonly scaledDivergence?: Float64Array | undefined;
   /** Seconds; Courant numbers are given for it. */
   readonly timeStep?: number | undefined;
 }
@@ -50,6 +61,8 @@ export interface AuditFigures {
   readonly projectionLoss: number | null;
   /** Volume means of the fluctuation's products, XX XY XZ YY YZ ZZ, m2/s2. */
   readonly covariance: readonly [number, number, number, number, number, number];
+  /** The same of what was wanted. */
+  readonly covarianceWanted: readonly number[] | null;
   /** Of each component of the fluctuation, volume-weighted. */
   readonly skewness: readonly [number, number, number];
   readonly flatness: readonly [number, number, number];
@@ -66,7 +79,16 @@ export interface AuditFigures {
     readonly constant: number;
   } | null;
   /** Net flux of the fluctuation through each named boundary, m3/s, with its area, m2. */
-  readonly boundaries: readonly { readonly name: string; readonly area: number; readonly netFlux: number }[];
+  readonly boundaries: readonly {
+    readonly name: string;
+    readonly area: number;
+    readonly netFlux: number;
+    /** Before control; null when it is not known. */
+    readonly netFluxBefore: number | null;
+  }[];
+  /** Spectra and correlation lengths along periods with equally spaced cells. */
+  readonly alongPeriods: readonly LineFigures[];
+  readonly zones: readonly ZoneFigures[];
 }
 
 function volumeMean(values: Float64Array | undefined, volumes: Float64Array, volume: number): number | null {
@@ -157,6 +179,24 @@ function lessMean(velocity: Float64Array, volumes: Float64Array, volume: number)
   return out;
 }
 
+function tensorMean(values: Float64Array, volumes: Float64Array, volume: number): number[] {
+  const sum = new Array<number>(6).fill(0);
+  for (let c = 0; c < volumes.length; c += 1) {
+    for (let i = 0; i < 6; i += 1) sum[i] = (sum[i] as number) + (volumes[c] as number) * (values[6 * c + i] as number);
+  }
+  return sum.map((s) => s / volume);
+}
+
+/** Net outward flux through boundary faces, each with the velocity of its cell. */
+function fluxThrough(mesh: CellMesh, geometry: MeshGeometry, faces: Int32Array, u: Float64Array): number {
+  let flux = 0;
+  for (const face of faces) {
+    const cell = mesh.owner[face] as number;
+    for (let c = 0; c < 3; c += 1) flux += (geometry.faceAreas[3 * face + c] as number) * (u[3 * cell + c] as number);
+  }
+  return flux;
+}
+
 /**
  * Measures a velocity field on its mesh.
  *
@@ -191,10 +231,11 @@ export function auditField(input: AuditInput): AuditFigures {
     divergence: {
       before: input.divergenceBefore ?? null,
       after: input.divergenceAfter,
-      operator: 'interpolated faces, weights by distance',
+      operator: input.operator ?? 'interpolated faces, weights by distance',
     },
     projectionLoss: input.projectionLoss ?? null,
     ...measured,
+    covarianceWanted: input.covarianceWanted === undefined ? null : tensorMean(input.covarianceWanted, volumes, volume),
     velocityMax: fastest,
     fluctuationRms: componentRms(u, volumes),
     timeStepForCourantOne: largestRate > 0 ? 1 / largestRate : null,
@@ -202,14 +243,16 @@ export function auditField(input: AuditInput): AuditFigures {
     outside: input.outside === undefined ? null : { inside, nearest, extrapolated, constant },
     boundaries: mesh.patches.map((patch) => {
       let area = 0;
-      let netFlux = 0;
-      for (const face of patch.faces) {
-        const cell = mesh.owner[face] as number;
-        const s = geometry.faceAreas.subarray(3 * face, 3 * face + 3);
-        area += Math.hypot(s[0] as number, s[1] as number, s[2] as number);
-        for (let c = 0; c < 3; c += 1) netFlux += (s[c] as number) * (u[3 * cell + c] as number);
-      }
-      return { name: patch.name, area, netFlux };
+      for (const face of patch.faces) area += Math.hypot(...geometry.faceAreas.subarray(3 * face, 3 * face + 3));
+      const before = input.fluctuationBefore;
+      return {
+        name: patch.name,
+        area,
+        netFlux: fluxThrough(mesh, geometry, patch.faces, u),
+        netFluxBefore: before === undefined ? null : fluxThrough(mesh, geometry, patch.faces, before),
+      };
     }),
+    alongPeriods: lineFigures(mesh, geometry, input.periodic, u),
+    zones: input.zones === undefined ? [] : zoneFigures(input.zones, { ...input, volumes, fluctuation: u }),
   };
 }
