@@ -125,7 +125,7 @@ export function findQuantity(name: string): Quantity | undefined {
 
 /** SI unit of a standard name, component names such as `VelocityX` included; undefined for other names. */
 export function unitOf(name: string): string | undefined {
-  return (findQuantity(name) ?? findQuantity(name.replace(/([XYZ])\1?$|XY$|XZ$|YZ$/i, '')))?.unit;
+  return (findQuantity(name) ?? findQuantity(name.replace(/(XX|XY|XZ|YY|YZ|ZZ|X|Y|Z)$/, '')))?.unit;
 }
 
 /**

@@ -63,7 +63,7 @@ function heldFluxesOf(op: FaceOperator, target: Target, velocity: Float64Array):
  *
  * @throws InputError
  */
-function _requireBalance(op: FaceOperator, target: Target, fluxes: Float64Array): void {
+function requireBalance(op: FaceOperator, target: Target, fluxes: Float64Array): void {
   if (op.freeCells.length > 0) return;
   let net = 0;
   let size = 0;
@@ -134,7 +134,9 @@ export async function controlDivergence(
   }
   let projectedMean = mean;
   if (request.projection.mean && mean !== undefined) {
-    const result = await timed(progress, timings, 'project mean', 100, () => run(mean, heldFluxesOf(op, target, mean)));
+    const held = heldFluxesOf(op, target, mean);
+    requireBalance(op, target, held);
+    const result = await timed(progress, timings, 'project mean', 100, () => run(mean, held));
     projectedMean = result.velocity;
     figures.mean = {
       iterations: result.iterations,

@@ -59,28 +59,56 @@ export function withPeriodicMargins(cloud: PrecursorCloud, target: Target, assum
   return present;
 }
 
+/** Part of a wall face's direction along an axis from which on the wall counts as normal to it. */
+const alongNormal = 0.5;
+
 /**
- * Wall places that add something to the cloud: along constant axes many fall together, and a profile may hold its wall
- * points already.
+ * Wall places that add something to the cloud. Along constant axes many fall together, and a profile may hold its wall
+ * points already. Places beyond the cloud in a direction along their wall are left out: the hull would span from wall to
+ * wall there, without a point of the flow between.
  */
-function newPlaces(cloud: PrecursorCloud, walls: Float64Array, constantAxes: readonly number[]): Float64Array {
-  if (constantAxes.length === 0) return walls;
+function newPlaces(
+  cloud: PrecursorCloud,
+  walls: { readonly points: Float64Array; readonly areas: Float64Array },
+  constantAxes: readonly number[],
+): Float64Array {
   const axes = [0, 1, 2].filter((axis) => !constantAxes.includes(axis));
-  const key = (points: Float64Array, i: number): string => axes.map((axis) => points[3 * i + axis]).join();
+  const low = [Infinity, Infinity, Infinity];
+  const high = [-Infinity, -Infinity, -Infinity];
+  const { points } = cloud;
+  for (let i = 0; i < points.length; i += 1) {
+    low[i % 3] = Math.min(low[i % 3] as number, points[i] as number);
+    high[i % 3] = Math.max(high[i % 3] as number, points[i] as number);
+  }
+  const key = (places: Float64Array, i: number): string => axes.map((axis) => places[3 * i + axis]).join();
+  const merges = constantAxes.length > 0;
   const seen = new Set<string>();
-  for (let i = 0; i < cloud.points.length / 3; i += 1) seen.add(key(cloud.points, i));
+  for (let i = 0; merges && i < points.length / 3; i += 1) seen.add(key(points, i));
   const kept: number[] = [];
-  for (let i = 0; i < walls.length / 3; i += 1) {
-    const place = key(walls, i);
-    if (seen.has(place)) continue;
-    seen.add(place);
-    kept.push(walls[3 * i] as number, walls[3 * i + 1] as number, walls[3 * i + 2] as number);
+  for (let i = 0; i < walls.points.length / 3; i += 1) {
+    const size = Math.hypot(...walls.areas.subarray(3 * i, 3 * i + 3));
+    const isBeyond = axes.some((axis) => {
+      const x = walls.points[3 * i + axis] as number;
+      const along = Math.abs(walls.areas[3 * i + axis] as number) < alongNormal * size;
+      return along && (x < (low[axis] as number) || x > (high[axis] as number));
+    });
+    if (isBeyond) continue;
+    if (merges) {
+      const place = key(walls.points, i);
+      if (seen.has(place)) continue;
+      seen.add(place);
+    }
+    for (let c = 0; c < 3; c += 1) kept.push(walls.points[3 * i + c] as number);
   }
   return Float64Array.from(kept);
 }
 
 /** The cloud with its walls: zero velocity and k there, other quantities from the nearest point. */
-export function withWalls(cloud: PrecursorCloud, all: Float64Array, constantAxes: readonly number[]): PrecursorCloud {
+export function withWalls(
+  cloud: PrecursorCloud,
+  all: { readonly points: Float64Array; readonly areas: Float64Array },
+  constantAxes: readonly number[],
+): PrecursorCloud {
   const walls = newPlaces(cloud, all, constantAxes);
   if (walls.length === 0) return cloud;
   const extra = walls.length / 3;

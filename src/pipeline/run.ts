@@ -67,13 +67,18 @@ export function refuseBeyond(memory: number | undefined, target: Target, precurs
   });
 }
 
-/** Corners of wall faces and their centres: where the velocity is zero. */
-function wallPlaces(target: Target, walls: Int32Array): Float64Array {
-  const places = new Float64Array(3 * walls.length);
+/** Centres of wall faces, where the velocity is zero, and the directions of the faces. */
+function wallPlaces(
+  target: Target,
+  walls: Int32Array,
+): { readonly points: Float64Array; readonly areas: Float64Array } {
+  const points = new Float64Array(3 * walls.length);
+  const areas = new Float64Array(3 * walls.length);
   walls.forEach((face, i) => {
-    places.set(target.geometry.faceCentroids.subarray(3 * face, 3 * face + 3), 3 * i);
+    points.set(target.geometry.faceCentroids.subarray(3 * face, 3 * face + 3), 3 * i);
+    areas.set(target.geometry.faceAreas.subarray(3 * face, 3 * face + 3), 3 * i);
   });
-  return places;
+  return { points, areas };
 }
 
 function checksOf(

@@ -23,8 +23,8 @@ export interface TransferOptions {
   readonly outside: 'nearest' | 'extrapolate' | 'fail' | number;
   readonly logarithmic: boolean;
   readonly limited: boolean;
-  /** 3 x n places where the velocity and k are zero: the no-slip walls. */
-  readonly wallPoints?: Float64Array;
+  /** Places where the velocity and k are zero: centres (3 x n, m) and area vectors (3 x n) of no-slip wall faces. */
+  readonly wallPoints?: { readonly points: Float64Array; readonly areas: Float64Array };
 }
 
 export interface Transferred {
@@ -214,7 +214,7 @@ export async function transferFields(
       });
     }
     const walls = options.wallPoints;
-    const useWalls = walls !== undefined && walls.length > 0 && options.method !== 'conservative';
+    const useWalls = walls !== undefined && walls.points.length > 0 && options.method !== 'conservative';
     if (mesh !== undefined && options.method === 'linear' && cloud.place === 'points') {
       used.push('linear (shape functions)');
       await timed(progress, timings, 'transfer', cells, () =>

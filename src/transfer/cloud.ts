@@ -277,6 +277,17 @@ function longestEdge(points: Float64Array, corners: Int32Array, count: number, d
   return Math.sqrt(longest);
 }
 
+/** Lowest coordinates, then highest. */
+function boxOf(points: Float64Array, dimension: number): number[] {
+  const box = [...new Array(dimension).fill(Infinity), ...new Array(dimension).fill(-Infinity)] as number[];
+  for (let i = 0; i < points.length; i += 1) {
+    const c = i % dimension;
+    box[c] = Math.min(box[c] as number, points[i] as number);
+    box[dimension + c] = Math.max(box[dimension + c] as number, points[i] as number);
+  }
+  return box;
+}
+
 /** Steps of halving on the way from a target outside to the hull. */
 const hullSteps = 30;
 
@@ -285,6 +296,7 @@ function linearInSpace(solid: Tetrahedralisation, tree: KdTree, walled: boolean,
   const squared = new Float64Array(1);
   const nearestOne = new Int32Array(1);
   const { points, vertices, neighbours } = solid;
+  const box = walled ? boxOf(points, 3) : [];
   let from = 0;
   return (x, y, z, stencil, fresh) => {
     from = locateTetrahedron(solid, x, y, z, fresh ? 0 : from);
@@ -304,8 +316,18 @@ function linearInSpace(solid: Tetrahedralisation, tree: KdTree, walled: boolean,
     if (outside !== 'extrapolate') {
       stencil.sources[0] = nearestOne[0] as number;
       takeNearest(stencil, squared[0] as number);
-      // Next to a wall the nearest point is too far from it: the place where the way there enters the hull is taken.
+      // Next to a wall the nearest point is too far from it: the nearest place in the box of all points is taken where
+      // that is in the hull, else the place where the way to the nearest point enters the hull.
       if (walled) {
+        const cx = Math.min(Math.max(x, box[0] as number), box[3] as number);
+        const cy = Math.min(Math.max(y, box[1] as number), box[4] as number);
+        const cz = Math.min(Math.max(z, box[2] as number), box[5] as number);
+        from = locateTetrahedron(solid, cx, cy, cz, from);
+        if (vertices[4 * from + 3] !== ghost) {
+          stencil.sources.set(vertices.subarray(4 * from, 4 * from + 4));
+          barycentric(points, stencil, cx, cy, cz);
+          return;
+        }
         let [away, inside] = [1, 0];
         for (let step = 0; step < hullSteps; step += 1) {
           const t = (away + inside) / 2;
@@ -352,15 +374,26 @@ function planeWeights(t: PlaneTriangulation, triangle: number, x: number, y: num
   stencil.count = 3;
 }
 
-/** Moves a target outside towards its nearest point until it enters the hull, and takes the weights there. */
+/**
+ * Weights for a target outside: at the nearest place in the box of all points where that is in the hull, else where the
+ * way to the nearest point enters the hull.
+ */
 function enterPlane(
   t: PlaneTriangulation,
   home: number,
   nearest: number,
   u: number,
   v: number,
+  box: readonly number[],
   stencil: Stencil,
 ): void {
+  const cu = Math.min(Math.max(u, box[0] as number), box[2] as number);
+  const cv = Math.min(Math.max(v, box[1] as number), box[3] as number);
+  const clamped = locateTriangle(t, cu, cv, home);
+  if (clamped >= 0) {
+    planeWeights(t, clamped, cu, cv, stencil);
+    return;
+  }
   const pu = t.points[2 * nearest] as number;
   const pv = t.points[2 * nearest + 1] as number;
   let [away, inside] = [1, 0];
@@ -391,6 +424,7 @@ function planeFinder(source: PlaneSource, options: CloudPlan['options']): Finder
   }
   const one = new Int32Array(1);
   const squared = new Float64Array(1);
+  const box = source.walled ? boxOf(triangulation.points, 2) : [];
   return (x, y, z, stencil) => {
     const [u, v] = pick(x, y, z);
     search.nearest(u, v, 1, one, squared);
@@ -405,7 +439,7 @@ function planeFinder(source: PlaneSource, options: CloudPlan['options']): Finder
     if (options.outside !== 'extrapolate') {
       stencil.sources[0] = one[0] as number;
       takeNearest(stencil, squared[0] as number);
-      if (source.walled) enterPlane(triangulation, home, one[0] as number, u, v, stencil);
+      if (source.walled) enterPlane(triangulation, home, one[0] as number, u, v, box, stencil);
       return;
     }
     const triangle = Math.floor((-1 - found) / 3);
