@@ -99,7 +99,8 @@ function lineSource(points: Float64Array, axis: number, options: CloudOptions): 
       });
     }
   }
-  if (options.method === 'linear' && count < 2) throw tooFew(options.file, count, 2, 'linear along a profile');
+  const own = Math.min(options.own ?? count, count);
+  if (options.method === 'linear' && own < 2) throw tooFew(options.file, own, 2, 'linear along a profile');
   return { kind: 'line', axis, places, numbers };
 }
 
@@ -114,7 +115,7 @@ function planeSource(points: Float64Array, axes: readonly [number, number], opti
   const walled = own < count;
   const index = buildPlaneIndex(flat.subarray(0, 2 * own));
   if (options.method !== 'linear') return { kind: 'plane', axes, index, walled };
-  if (count < 3) throw tooFew(options.file, count, 3, 'linear in a plane');
+  if (own < 3) throw tooFew(options.file, own, 3, 'linear in a plane');
   const triangulation = triangulatePlane(flat);
   if (triangulation === undefined) {
     throw new InputError({
@@ -136,7 +137,7 @@ function spaceSource(points: Float64Array, options: CloudOptions): SpaceSource {
   const walled = own < count;
   const tree = buildKdTree(points.subarray(0, 3 * own));
   if (options.method !== 'linear') return { kind: 'space', tree, walled };
-  if (count < 4) throw tooFew(options.file, count, 4, 'linear');
+  if (own < 4) throw tooFew(options.file, own, 4, 'linear');
   const solid = tetrahedralise(points);
   if (typeof solid === 'string') {
     const remedies = {
