@@ -1,7 +1,7 @@
 import { type Command, Option } from 'commander';
 import { requireFree, writeFileBeside } from '../basis/half-written.js';
 import { auditFile } from '../pipeline/audit-file.js';
-import { reportFigures } from '../pipeline/run-page.js';
+import { alongPeriods, reportFigures } from '../pipeline/run-page.js';
 import { auditReport } from '../report/audit-report.js';
 import { renderReport } from '../report/render.js';
 import { summaryTables } from '../report/terminal.js';
@@ -35,6 +35,7 @@ async function auditCommand(file: string, options: AuditOptions): Promise<void> 
     audit: reportFigures(outcome.audit),
     operator: outcome.audit.divergence.operator,
     pictures: [],
+    ...alongPeriods(outcome.audit),
     assumptions: outcome.assumptions,
     remarks: outcome.target.dataset.remarks,
     footer: [`eddygraft ${packageVersion()}`],

@@ -110,6 +110,8 @@ export async function auditFile(request: AuditRequest): Promise<AuditOutcome> {
   const audit = auditField({
     mesh,
     geometry,
+    periodic: target.periodic,
+    operator: `interpolated faces, weights by ${request.weights === 'equal' ? 'halves' : 'distance'}`,
     velocity,
     fluctuation: measured,
     wanted: total,

@@ -1,10 +1,10 @@
 import { weightedHistogram } from '../appraisal/histogram.js';
 import { type AuditFigures, courantRates } from '../audit/audit.js';
-import type { AuditReportFigures, ProfileFigures, RunReportData } from '../report/audit-data.js';
+import type { AuditReportData, AuditReportFigures, ProfileFigures, RunReportData } from '../report/audit-data.js';
 import type { ReportPage } from '../report/page.js';
 import { runReport } from '../report/run-report.js';
 import { slabProfiles, startPictures } from '../report/start-pictures.js';
-import { type RunResult, scaledFields } from './run.js';
+import { type RunResult, resolvableCovariance, scaledFields } from './run.js';
 
 /** The audit's figures as the page takes them: what is not known is left out. */
 export function reportFigures(audit: AuditFigures): AuditReportFigures {
@@ -21,6 +21,7 @@ export function reportFigures(audit: AuditFigures): AuditReportFigures {
     divergence: { ...(divergence.before === null ? {} : { before: divergence.before }), after: divergence.after },
     ...(projectionLoss === null ? {} : { projectionLoss }),
     covariance: audit.covariance,
+    ...(audit.covarianceWanted === null ? {} : { covarianceWanted: audit.covarianceWanted }),
     velocityMax: audit.velocityMax,
     timeStepForCourantOne: audit.timeStepForCourantOne ?? Number.POSITIVE_INFINITY,
   };
@@ -41,16 +42,12 @@ function variedAxis(result: RunResult, values: Float64Array): 'x' | 'y' | 'z' {
 function profilesOf(result: RunResult): ProfileFigures[] {
   const { fluctuations, controlled, target } = result;
   if (fluctuations === undefined || controlled === undefined) return [];
-  const { wanted, total, plan } = fluctuations;
+  const { wanted, total } = fluctuations;
   const { cellCentroids, cellVolumes } = target.geometry;
   const axis = variedAxis(result, total);
-  // The resolvable part of the wanted stresses has their shape.
-  const covariance = plan.covariance?.map((value, i) => {
-    const c = Math.floor(i / 6);
-    const k = total[c] as number;
-    return k > 0 ? (value * (wanted[c] as number)) / k : 0;
-  });
-  return [slabProfiles(cellCentroids, cellVolumes, axis, wanted, controlled.fluctuation, covariance)];
+  return [
+    slabProfiles(cellCentroids, cellVolumes, axis, wanted, controlled.fluctuation, resolvableCovariance(fluctuations)),
+  ];
 }
 
 function picturesOf(result: RunResult): ReturnType<typeof startPictures> {
@@ -112,6 +109,39 @@ function histogramsOf(result: RunResult): Partial<RunReportData> {
   };
 }
 
+/** One-dimensional spectrum and correlation lengths along the first periodic direction with evenly spaced cells. */
+export function alongPeriods(audit: AuditFigures): Pick<AuditReportData, 'spectrum' | 'correlations'> {
+  const [first] = audit.alongPeriods;
+  if (first === undefined) return {};
+  const nameOf = (direction: readonly number[]): string => {
+    const axis = direction.findIndex((value) => Math.abs(value) > 0.999);
+    return axis < 0 ? `(${direction.map((value) => value.toPrecision(3)).join(' ')})` : ('xyz'[axis] as string);
+  };
+  const cutoff = Math.PI / first.spacing;
+  return {
+    spectrum: {
+      waveNumber: first.waveNumber,
+      measured: first.longitudinalSpectrum,
+      cutoffs: [
+        { value: cutoff, label: 'pi / spacing' },
+        { value: (2 * cutoff) / 3, label: '3 cells' },
+      ],
+      caption: `Spectrum of the component along ${nameOf(first.direction)} on ${first.lines} lines of ${first.samples} cells.`,
+    },
+    correlations: audit.alongPeriods.flatMap((entry) =>
+      entry.longitudinalLength === null || entry.transverseLength === null
+        ? []
+        : [
+            {
+              name: `along ${nameOf(entry.direction)}`,
+              longitudinal: entry.longitudinalLength,
+              transverse: entry.transverseLength,
+            },
+          ],
+    ),
+  };
+}
+
 /** Everything the page of a run shows, the pictures left out where only the terminal's tables are wanted. */
 export function runReportData(result: RunResult, withPictures: boolean): RunReportData {
   const { manifest, transferred, target, precursor } = result;
@@ -133,7 +163,7 @@ export function runReportData(result: RunResult, withPictures: boolean): RunRepo
     operator: result.audit.divergence.operator,
     pictures: pictures.pictures,
     before: pictures.before,
-    ...(withPictures ? { profiles: profilesOf(result), ...histogramsOf(result) } : {}),
+    ...(withPictures ? { profiles: profilesOf(result), ...histogramsOf(result), ...alongPeriods(result.audit) } : {}),
     assumptions: manifest.assumptions,
     remarks: manifest.remarks,
     footer: [`eddygraft ${manifest.version}, seed ${manifest.seed ?? 'none'}, ${manifest.finished}`],

@@ -122,6 +122,15 @@ interface Start {
   readonly audit: AuditFigures;
 }
 
+/** The resolvable part of the wanted stresses: their shape, the energy that the mesh can carry. */
+export function resolvableCovariance(fluctuations: FluctuationResult): Float64Array | undefined {
+  const { plan, total, wanted } = fluctuations;
+  return plan.covariance?.map((value, i) => {
+    const k = total[Math.floor(i / 6)] as number;
+    return k > 0 ? (value * (wanted[Math.floor(i / 6)] as number)) / k : 0;
+  });
+}
+
 /** The fields of the start and their audit. */
 export function finishStart(
   target: Target,
@@ -165,8 +174,12 @@ export function finishStart(
   const audit = auditField({
     mesh: target.mesh,
     geometry: target.geometry,
+    periodic: target.periodic,
     velocity,
     fluctuation,
+    fluctuationBefore: fluctuations.velocity,
+    operator: String(controlled.figures.operator),
+    covarianceWanted: resolvableCovariance(fluctuations),
     wanted: fluctuations.total,
     resolvable: fluctuations.wanted,
     modelled: fluctuations.modelled,
