@@ -142,6 +142,7 @@ export function matchPeriodic(
     const tolerance = Math.min(planeTolerance * extent, 0.01 * (high[axis]! - low[axis]!));
     const period: [number, number, number] = [0, 0, 0];
     period[axis] = high[axis]! - low[axis]!;
+    cleanPeriod(period);
     const sides = {
       name: `periodic axis ${name}`,
       period,
@@ -184,6 +185,18 @@ function centreOf(g: MeshGeometry, faces: Int32Array): [number, number, number] 
 }
 
 /**
+ * Takes the rounding out of a translation, so that the same period found from planes and from boundaries is the same
+ * number: wave vectors are snapped to it, and a start must not depend on how its period was named.
+ */
+function cleanPeriod(period: [number, number, number]): void {
+  const size = Math.hypot(...period);
+  for (let a = 0; a < 3; a++) {
+    const v = period[a as 0];
+    period[a as 0] = Math.abs(v) < 1e-9 * size ? 0 : Number(v.toPrecision(10));
+  }
+}
+
+/**
  * Pairs the faces of named boundaries, two names a period; the translation is that of their centres.
  *
  * @throws InputError when a name is unknown or faces have no mate
@@ -203,9 +216,11 @@ export function matchPeriodicPatches(
       [low, high] = [high, low];
       [a, b] = [b, a];
     }
+    const period: [number, number, number] = [b[0] - a[0], b[1] - a[1], b[2] - a[2]];
+    cleanPeriod(period);
     return {
       name: `periodic boundaries ${first}, ${second}`,
-      period: [b[0] - a[0], b[1] - a[1], b[2] - a[2]],
+      period,
       low,
       high,
     };
