@@ -1,7 +1,7 @@
 // The main job on a large case: N^3-like channel target, a cloud precursor, 640 modes. Prints time and peak memory.
 // usage: node tests/bench/whole-run.mjs [cells] [precursor points] [workers]
 import { spawnSync } from 'node:child_process';
-import { existsSync, mkdtempSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
+import { existsSync, mkdtempSync, readFileSync, rmSync, statSync, writeFileSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { fileURLToPath } from 'node:url';
