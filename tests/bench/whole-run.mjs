@@ -102,6 +102,7 @@ const peak = /Maximum resident set size \(kbytes\): (\d+)/.exec(result.stderr)?.
 console.log(`${total} cells, ${count} points, ${workers} workers: ${seconds.toFixed(1)} s, exit ${result.status}`);
 if (existsSync(join(folder, 'start.json'))) {
   const manifest = JSON.parse(readFileSync(join(folder, 'start.json'), 'utf8'));
+  console.log(`report ${(statSync(join(folder, 'start.html')).size / 1e6).toFixed(2)} MB`);
   console.log(
     `peak memory ${((peak === undefined ? manifest.peakMemoryBytes : Number(peak) * 1024) / 2 ** 30).toFixed(2)} GiB`,
   );
