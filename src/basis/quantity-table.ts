@@ -98,6 +98,7 @@ export const quantities: readonly Quantity[] = [
   quantity('TurbulentEnergyKineticTotal', 'm2/s2', perMass, 'k of the precursor, resolved and modelled together', {
     nonNegative: true,
   }),
+  quantity('OutsideDistance', 'm', length, 'distance to the precursor for cells outside it', { nonNegative: true }),
   quantity('Outside', '-', none, '0 inside the precursor, 1 nearest, 2 extrapolated, 3 constant', {
     nonNegative: true,
   }),

@@ -85,6 +85,42 @@ function requireBalance(op: FaceOperator, target: Target, fluxes: Float64Array):
   });
 }
 
+/** Net outward flux of the mean through every named boundary before and after its projection, m3/s. */
+function boundaryFluxes(
+  target: Target,
+  op: FaceOperator,
+  before: Float64Array,
+  after: Float64Array,
+): readonly { readonly name: string; readonly before: number; readonly after: number }[] {
+  const { mesh, geometry } = target;
+  const held = new Set(op.heldFaces);
+  const through = (face: number, velocity: Float64Array): number => {
+    const cell = mesh.owner[face] as number;
+    let flux = 0;
+    for (let c = 0; c < 3; c += 1) {
+      flux += (geometry.faceAreas[3 * face + c] as number) * (velocity[3 * cell + c] as number);
+    }
+    return flux;
+  };
+  const lists: { readonly name: string; readonly faces: Int32Array }[] = [...mesh.patches];
+  if (lists.length === 0) {
+    const count = mesh.faceCount - mesh.innerFaceCount;
+    lists.push({
+      name: 'whole boundary',
+      faces: Int32Array.from({ length: count }, (_, i) => mesh.innerFaceCount + i),
+    });
+  }
+  return lists.map(({ name, faces }) => {
+    let [first, second] = [0, 0];
+    for (const face of faces) {
+      const flux = through(face, before);
+      first += flux;
+      second += held.has(face) ? flux : through(face, after);
+    }
+    return { name, before: first, after: second };
+  });
+}
+
 /**
  * Measures the divergence of the fluctuation, projects it where the case says so, measures again; the mean field too
  * where that is wanted.
@@ -143,6 +179,7 @@ export async function controlDivergence(
       converged: result.converged,
       reduction: result.history.at(-1) ?? 0,
       energyOfChange: result.energyBefore > 0 ? result.energyOfChange / result.energyBefore : 0,
+      boundaries: boundaryFluxes(target, op, mean, result.velocity),
     };
   }
   const netAfter = new Float64Array(op.cellCount);

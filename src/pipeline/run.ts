@@ -134,7 +134,7 @@ export function resolvableCovariance(fluctuations: FluctuationResult): Float64Ar
 /** The fields of the start and their audit. */
 export function finishStart(
   target: Target,
-  transferred: Pick<Transferred, 'fields' | 'outside'>,
+  transferred: Pick<Transferred, 'fields' | 'outside'> & Partial<Pick<Transferred, 'distance'>>,
   fluctuations: FluctuationResult | undefined,
   controlled: Controlled | undefined,
   timeStep: number | undefined,
@@ -145,6 +145,7 @@ export function finishStart(
   const scalar = (values: Float64Array): Field => ({ components: 1, values });
   const mean = controlled?.mean ?? transferred.fields.get('Velocity')?.values;
   fields.set('Outside', outsideField(transferred.outside));
+  if (transferred.distance !== undefined) fields.set('OutsideDistance', scalar(transferred.distance));
   fields.set('CellWidth', scalar(cellWidths(target.geometry)));
   if (fluctuations === undefined || controlled === undefined) {
     const velocity = mean ?? new Float64Array(3 * cells);

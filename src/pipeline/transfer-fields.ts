@@ -152,9 +152,26 @@ async function transferFromCells(
   const outside: OutsideRule = options.outside === 'fail' ? 'nearest' : options.outside;
   const common = { limited: options.limited, outside };
   if (options.method === 'conservative') {
+    // Momentum is what is conserved: velocities travel as density times velocity where there is a density.
+    const density = names.indexOf('Density');
+    const velocity = names.indexOf('Velocity');
+    const withMomentum = density >= 0 && velocity >= 0;
+    if (withMomentum) {
+      const rho = (fields[density] as (typeof fields)[number]).values;
+      const u = (fields[velocity] as (typeof fields)[number]).values;
+      for (let i = 0; i < u.length; i += 1) u[i] = (u[i] as number) * (rho[Math.floor(i / 3)] as number);
+    }
     const plan = prepareConservative({ mesh, geometry }, target, fields, common);
     const covered = sharedFloat64(target.mesh.cellCount);
     await workers.overRanges('conservative', { plan, out: { ...out, covered } }, target.mesh.cellCount, progress);
+    if (withMomentum) {
+      const rho = out.fields[density] as Float64Array;
+      const u = out.fields[velocity] as Float64Array;
+      for (let i = 0; i < u.length; i += 1) {
+        const local = rho[Math.floor(i / 3)] as number;
+        u[i] = local > 0 ? (u[i] as number) / local : 0;
+      }
+    }
   } else {
     const plan = prepareCellLinear(mesh, geometry, fields, common);
     const targets = target.geometry.cellCentroids;

@@ -47,6 +47,7 @@ export async function transferOnly(request: TransferRequest): Promise<TransferOu
     const transferred = await transferFields(precursor, target, request.transfer, workers, progress, timings);
     const fields = new Map<string, Field>(transferred.fields);
     fields.set('Outside', outsideField(transferred.outside));
+    fields.set('OutsideDistance', { components: 1, values: transferred.distance });
     const provenance = JSON.stringify({
       program: 'eddygraft',
       version: request.version,
