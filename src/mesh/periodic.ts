@@ -192,7 +192,7 @@ function cleanPeriod(period: [number, number, number]): void {
   const size = Math.hypot(...period);
   for (let a = 0; a < 3; a++) {
     const v = period[a as 0];
-    period[a as 0] = Math.abs(v) < 1e-9 * size ? 0 : Number(v.toPrecision(10));
+    period[a as 0] = Math.abs(v) < 1e-9 * size ? 0 : Number(v.toPrecision(14));
   }
 }
 
